@@ -1,0 +1,1 @@
+"""Errors, progress, text marker, child-process runner: what every layer may use."""

@@ -1,0 +1,1 @@
+"""Items, segments, stores and clusters."""

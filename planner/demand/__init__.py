@@ -1,0 +1,1 @@
+"""Share models, their estimation and their tests."""

@@ -1,0 +1,1 @@
+"""Workbook, lists and reports."""

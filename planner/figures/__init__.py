@@ -1,0 +1,1 @@
+"""Figures for the report and the workbook, without Qt."""

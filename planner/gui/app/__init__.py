@@ -1,0 +1,1 @@
+"""Window, menus, start."""

@@ -1,0 +1,1 @@
+"""From change records and jobs to Qt signals."""

@@ -1,0 +1,1 @@
+"""The five pages, blind to each other."""

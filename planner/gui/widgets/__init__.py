@@ -1,0 +1,1 @@
+"""Painted and composed widgets."""

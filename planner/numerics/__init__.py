@@ -1,0 +1,1 @@
+"""Grouped sums, draws and solvers without retail words."""

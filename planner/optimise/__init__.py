@@ -1,0 +1,1 @@
+"""Limits, best assortment, proven bound, ladder of changes; and a verifier."""

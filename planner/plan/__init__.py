@@ -1,0 +1,1 @@
+"""Frozen records of what the user decided."""

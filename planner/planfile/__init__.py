@@ -1,0 +1,1 @@
+"""The plan file: save, load, recover, in-use lock."""

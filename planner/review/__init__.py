@@ -1,0 +1,1 @@
+"""The open range review: undoable commands, jobs, the engine."""

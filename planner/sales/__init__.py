@@ -1,0 +1,1 @@
+"""From files to the market panel: reading, matching, checks, on-sale inference."""

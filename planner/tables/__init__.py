@@ -1,0 +1,1 @@
+"""View-neutral result tables."""

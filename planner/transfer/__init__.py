@@ -1,0 +1,1 @@
+"""Where sales go when the assortment changes."""
