@@ -1,0 +1,91 @@
+"""The tally: the plan against today, with the interval of every difference."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from planner.demand.fitted import FittedModel
+from planner.sales.panel import BaseWeek
+from planner.transfer.what_if import (
+    Floats,
+    States,
+    WhatIf,
+    interval,
+    presence,
+    today_states,
+    what_if,
+)
+
+
+@dataclass(frozen=True)
+class Figure:
+    """today, plan: per week; change = plan - today; low, high: 80 % interval of the change."""
+
+    today: float
+    plan: float
+    change: float
+    low: float
+    high: float
+
+
+@dataclass(frozen=True)
+class Tally:
+    """margin, sales: money ex VAT per week; units per week.
+
+    items: (today, plan) number of different items on the list anywhere;
+    changes: number of (item, cluster) pairs whose state differs from today.
+    space_today, space_used, space_limit (C,): of the store with the least room left, in the
+    unit of BaseWeek.space_cm.  effects: the units behind the figures.
+    """
+
+    margin: Figure
+    sales: Figure
+    units: Figure
+    items: tuple[int, int]
+    changes: int
+    space_today: Floats
+    space_used: Floats
+    space_limit: Floats
+    effects: WhatIf
+
+
+def _figure(effects: WhatIf, weight: Floats) -> Figure:
+    """Sum of weight (C, J) x units before and after."""
+    today = float((effects.before * weight).sum())
+    plan = float((effects.after * weight).sum())
+    draws = np.einsum("kcj,cj->k", effects.draws_after - effects.draws_before, weight)
+    low, high = interval(draws)
+    return Figure(today, plan, plan - today, float(low), float(high))
+
+
+def _space(
+    base: BaseWeek, cluster: NDArray[np.int64], present: NDArray[np.bool_], n: int
+) -> NDArray[np.int64]:
+    """Position (C,) of the store with the least room left in each cluster."""
+    room = base.space_limit - present.astype(np.float64) @ base.space_cm
+    return np.array([np.flatnonzero(cluster == c)[np.argmin(room[cluster == c])] for c in range(n)])
+
+
+def tally(fitted: FittedModel, base: BaseWeek, states: States) -> Tally:
+    """Value the plan ``states`` (C, J) against today on the fitted model and its draws."""
+    cluster = fitted.estimate.cluster
+    n_clusters = states.shape[0]
+    present = presence(states, base.today, cluster)
+    effects = what_if(fitted, base.today, present)
+    stores = _tightest(base, cluster, present, n_clusters)
+    use = present.astype(np.float64) @ base.space_cm
+    use_today = base.today.astype(np.float64) @ base.space_cm
+    now = today_states(base.today, cluster, n_clusters)
+    return Tally(
+        margin=_figure(effects, np.nan_to_num(base.margin)),
+        sales=_figure(effects, np.nan_to_num(base.net_price)),
+        units=_figure(effects, np.ones_like(base.price)),
+        items=(int(base.today.any(axis=0).sum()), int(present.any(axis=0).sum())),
+        changes=int((now != states).sum()),
+        space_today=use_today[stores],
+        space_used=use[stores],
+        space_limit=base.space_limit[stores],
+        effects=effects,
+    )
