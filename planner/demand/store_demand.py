@@ -62,7 +62,7 @@ class StoreDemand:
     @property
     def n_draws(self) -> int:
         """K."""
-        return self.attraction.shape[0]
+        return int(self.attraction.shape[0])
 
     def power(self) -> Floats:
         """lambda_g / lambda_c, (K, G)."""

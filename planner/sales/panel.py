@@ -47,12 +47,12 @@ class MarketPanel:
     @property
     def n_markets(self) -> int:
         """T."""
-        return self.units.shape[0]
+        return int(self.units.shape[0])
 
     @property
     def n_items(self) -> int:
         """J."""
-        return self.units.shape[1]
+        return int(self.units.shape[1])
 
 
 @dataclass(frozen=True)

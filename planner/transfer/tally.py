@@ -60,9 +60,7 @@ def _figure(effects: WhatIf, weight: Floats) -> Figure:
     return Figure(today, plan, plan - today, float(low), float(high))
 
 
-def _space(
-    base: BaseWeek, cluster: NDArray[np.int64], present: NDArray[np.bool_], n: int
-) -> NDArray[np.int64]:
+def _tightest(base: BaseWeek, cluster: Ints, present: Bools, n: int) -> Ints:
     """Position (C,) of the store with the least room left in each cluster."""
     room = base.space_limit - present.astype(np.float64) @ base.space_cm
     return np.array([np.flatnonzero(cluster == c)[np.argmin(room[cluster == c])] for c in range(n)])
