@@ -9,7 +9,9 @@ import numpy as np
 from planner.demand.fitted import FittedModel
 from planner.sales.panel import BaseWeek
 from planner.transfer.what_if import (
+    Bools,
     Floats,
+    Ints,
     States,
     WhatIf,
     interval,
