@@ -42,7 +42,7 @@ class StoreDemand:
     scale (K, S): exp(c_s), the store's common term (without shoppers: units per week).
     segment (J,), cluster (S,): positions.
     shoppers (S,): per week; None: volume form q = scale * W ** lambda_c.
-    price_effect (K,): effect of ln(regular price) on delta; zero when none was estimated.
+    price_effect (K, G): effect of ln(regular price) on the scaled utility delta / lambda_g.
 
         D_sg = sum_j present_sj v_cj              W_s = sum_g D_sg ** (lambda_g / lambda_c)
         q_s  = scale_s W_s ** lambda_c            without shoppers
@@ -57,7 +57,7 @@ class StoreDemand:
     segment: Ints
     cluster: Ints
     shoppers: Floats | None
-    price_effect: Floats = field(default_factory=lambda: np.zeros(1))
+    price_effect: Floats = field(default_factory=lambda: np.zeros((1, 1)))
 
     @property
     def n_draws(self) -> int:
@@ -79,7 +79,7 @@ class StoreDemand:
 
     def with_prices(self, ratio: Floats) -> StoreDemand:
         """The same demand at other regular prices: ``ratio`` (C, J) = new price / today's."""
-        slope = self.price_effect[:, None] / self.dissimilarity[:, self.segment]
+        slope = np.broadcast_to(self.price_effect, self.dissimilarity.shape)[:, self.segment]
         return replace(self, attraction=self.attraction * np.exp(slope[:, None, :] * np.log(ratio)))
 
     def parts(self, present: NDArray[np.bool_] | Floats) -> ShelfParts:

@@ -1,0 +1,1 @@
+"""Share models against truth, differences and closed forms."""
