@@ -1,0 +1,228 @@
+"""A list with one painted bar per row: who gets the sales, with intervals."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from PySide6.QtCore import (
+    QAbstractListModel,
+    QMimeData,
+    QModelIndex,
+    QPersistentModelIndex,
+    QRect,
+    QSize,
+    Qt,
+    Signal,
+)
+from PySide6.QtGui import QAction, QColor, QFont, QGuiApplication, QKeySequence, QPainter
+from PySide6.QtWidgets import (
+    QAbstractItemView,
+    QFrame,
+    QListView,
+    QStyle,
+    QStyledItemDelegate,
+    QStyleOptionViewItem,
+    QWidget,
+)
+
+from planner.base.text import _
+from planner.gui.theme.cells import CellBar
+from planner.gui.theme.colours import Marks, marks_of, mixed
+from planner.gui.theme.numbers import MINUS
+from planner.gui.widgets.interval_mark import paint_bar
+
+Index = QModelIndex | QPersistentModelIndex
+_NOWHERE = QModelIndex()
+_RowRole = Qt.ItemDataRole.UserRole + 1
+_PAD = 8
+
+
+@dataclass(frozen=True)
+class BarRow:
+    """kind: "item", "own" (own label), "leaves" (the category), "total" or "heading".
+
+    identity: what is sent when the row is chosen; empty for none.
+    value, low, high: in the list's unit; NaN low/high: no interval.
+    text: the value formatted; interval: the interval formatted; note: shown faint after the label.
+    """
+
+    label: str
+    value: float = math.nan
+    low: float = math.nan
+    high: float = math.nan
+    text: str = ""
+    interval: str = ""
+    kind: str = "item"
+    identity: str = ""
+    note: str = ""
+
+    def words(self) -> str:
+        """The row as one sentence part, for tool tips and screen readers."""
+        head = f"{self.label} ({self.note})" if self.note else self.label
+        if self.kind == "heading":
+            return head
+        if not self.interval:
+            return f"{head}: {self.text}"
+        return _("{label}: {value}, interval {interval}").format(
+            label=head, value=self.text, interval=self.interval
+        )
+
+
+class _BarRows(QAbstractListModel):
+    """Rows and the scale they share."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.rows: tuple[BarRow, ...] = ()
+        self.bottom, self.top = 0.0, 1.0
+
+    def set_rows(self, rows: tuple[BarRow, ...]) -> None:
+        same = len(rows) == len(self.rows)
+        if not same:
+            self.beginResetModel()
+        self.rows = rows
+        numbers = [n for row in rows for n in (row.value, row.low, row.high) if math.isfinite(n)]
+        self.bottom, self.top = min([*numbers, 0.0]), max([*numbers, 0.0])
+        if self.top == self.bottom:
+            self.top = self.bottom + 1.0
+        if not same:
+            self.endResetModel()
+        elif rows:
+            self.dataChanged.emit(self.index(0), self.index(len(rows) - 1))
+
+    def rowCount(self, parent: Index = _NOWHERE) -> int:
+        return 0 if parent.isValid() else len(self.rows)
+
+    def data(self, index: Index, role: int = Qt.ItemDataRole.DisplayRole) -> object:
+        if not index.isValid():
+            return None
+        row = self.rows[index.row()]
+        if role == Qt.ItemDataRole.DisplayRole:
+            return row.label
+        if role in (Qt.ItemDataRole.ToolTipRole, Qt.ItemDataRole.AccessibleTextRole):
+            return row.words()
+        if role == _RowRole:
+            return row
+        return None
+
+    def flags(self, index: Index) -> Qt.ItemFlag:
+        if index.isValid() and self.rows[index.row()].kind == "heading":
+            return Qt.ItemFlag.ItemIsEnabled
+        return Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
+
+
+class _BarPainter(QStyledItemDelegate):
+    """Label, bar with whisker, value."""
+
+    def sizeHint(self, option: QStyleOptionViewItem, index: Index) -> QSize:
+        return QSize(220, option.fontMetrics.height() + 9)
+
+    def paint(self, painter: QPainter, option: QStyleOptionViewItem, index: Index) -> None:
+        model = index.model()
+        assert isinstance(model, _BarRows)
+        row = model.rows[index.row()]
+        marks = marks_of(option.palette)
+        selected = bool(option.state & QStyle.StateFlag.State_Selected)
+        colour = marks.selected_text if selected else marks.text
+        rect: QRect = option.rect
+        painter.save()
+        if selected:
+            painter.fillRect(rect, marks.selected)
+        font = QFont(option.font)
+        font.setBold(row.kind in ("heading", "total"))
+        painter.setFont(font)
+        if row.kind == "heading":
+            painter.fillRect(rect, marks.band)
+            self._text(painter, rect.adjusted(_PAD, 0, -_PAD, 0), row.label, marks.text)
+        else:
+            self._row(painter, rect, row, model, marks, colour, selected)
+        if option.state & QStyle.StateFlag.State_HasFocus:
+            painter.setPen(colour)
+            painter.setBrush(Qt.BrushStyle.NoBrush)
+            painter.drawRect(rect.adjusted(0, 0, -1, -1))
+        painter.restore()
+
+    @staticmethod
+    def _text(painter: QPainter, rect: QRect, text: str, colour: QColor, right: bool = False) -> None:
+        painter.setPen(colour)
+        side = Qt.AlignmentFlag.AlignRight if right else Qt.AlignmentFlag.AlignLeft
+        elided = painter.fontMetrics().elidedText(text, Qt.TextElideMode.ElideRight, rect.width())
+        painter.drawText(rect, side | Qt.AlignmentFlag.AlignVCenter, elided)
+
+    def _row(
+        self,
+        painter: QPainter,
+        rect: QRect,
+        row: BarRow,
+        model: _BarRows,
+        marks: Marks,
+        colour: QColor,
+        selected: bool,
+    ) -> None:
+        widest = painter.fontMetrics().horizontalAdvance("+00,000.0") + _PAD
+        label = QRect(rect.left() + _PAD, rect.top(), int(rect.width() * 0.46) - _PAD, rect.height())
+        number = QRect(rect.right() - widest - _PAD, rect.top(), widest, rect.height())
+        bars = QRect(label.right() + _PAD, rect.top() + 4, number.left() - label.right() - 2 * _PAD, 1)
+        bars.setHeight(rect.height() - 8)
+        self._text(painter, label, row.label, colour)
+        used = painter.fontMetrics().horizontalAdvance(row.label) + _PAD
+        if row.note and used < label.width() - 30:
+            self._text(painter, label.adjusted(used, 0, 0, 0), row.note, colour if selected else marks.faint)
+        self._text(painter, number, row.text, colour, right=True)
+        if not math.isfinite(row.value) or bars.width() < 20:
+            return
+        own = {"own": marks.own, "leaves": marks.leaves, "total": marks.plain}
+        fill = mixed(marks.selected_text, marks.selected, 0.55) if selected else own.get(row.kind)
+        pattern = Qt.BrushStyle.BDiagPattern if row.kind == "leaves" else Qt.BrushStyle.SolidPattern
+        bar = CellBar(row.value, row.low, row.high, model.bottom, model.top)
+        painter.setClipRect(bars.adjusted(-6, -4, 6, 4))
+        paint_bar(painter, bars, bar, marks, colour if selected else marks.line, fill, pattern)
+        painter.setClipping(False)
+
+
+class BarList(QListView):
+    """``chosen(identity)``: the user moved to a row that has one."""
+
+    chosen = Signal(str)
+
+    def __init__(self, name: str, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self._rows = _BarRows()
+        self.setModel(self._rows)
+        self.setAccessibleName(name)
+        self.setItemDelegate(_BarPainter(self))
+        self.setUniformItemSizes(True)
+        self.setFrameShape(QFrame.Shape.NoFrame)
+        self.setVerticalScrollMode(QAbstractItemView.ScrollMode.ScrollPerPixel)
+        self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self.setContextMenuPolicy(Qt.ContextMenuPolicy.ActionsContextMenu)
+        copy = QAction(_("&Copy the list"), self)
+        copy.setShortcut(QKeySequence(QKeySequence.StandardKey.Copy))
+        copy.setShortcutContext(Qt.ShortcutContext.WidgetShortcut)
+        copy.triggered.connect(self.copy)
+        self.addAction(copy)
+
+    def rows(self) -> tuple[BarRow, ...]:
+        """What is shown."""
+        return self._rows.rows
+
+    def set_rows(self, rows: Sequence[BarRow]) -> None:
+        """Show other rows, on a common scale that holds all values and intervals."""
+        self._rows.set_rows(tuple(rows))
+
+    def currentChanged(self, current: Index, previous: Index) -> None:
+        super().currentChanged(current, previous)
+        if current.isValid() and self._rows.rows[current.row()].identity:
+            self.chosen.emit(self._rows.rows[current.row()].identity)
+
+    def copy(self) -> None:
+        """All rows on the clipboard, tab-separated."""
+        lines = [
+            "\t".join((row.label, row.note, row.text, row.interval)).replace(MINUS, "-")
+            for row in self._rows.rows
+        ]
+        data = QMimeData()
+        data.setText("\n".join(lines) + "\n")
+        QGuiApplication.clipboard().setMimeData(data)

@@ -1,0 +1,152 @@
+"""A table as every page shows it: sorting, copying, one painter for all cells."""
+
+from __future__ import annotations
+
+from typing import Protocol, cast
+
+from PySide6.QtCore import QAbstractItemModel, QModelIndex, QPersistentModelIndex, QPoint, Qt, Signal
+from PySide6.QtGui import QAction, QGuiApplication, QKeySequence
+from PySide6.QtWidgets import QAbstractItemView, QFrame, QHeaderView, QMenu, QTableView, QWidget
+
+from planner.base.text import _
+from planner.gui.widgets.cell_delegate import CellDelegate
+
+Index = QModelIndex | QPersistentModelIndex
+
+
+class HasRows(Protocol):
+    """What the view asks of its model beyond Qt's own questions."""
+
+    def identity_of(self, row: int) -> str: ...
+
+    def row_of(self, identity: str) -> int: ...
+
+    def heading_rows(self) -> list[int]: ...
+
+    def column_width(self, position: int, per_character: int) -> int: ...
+
+
+class TableView(QTableView):
+    """``chosen(identity)`` is sent when the current row changes."""
+
+    chosen = Signal(str)
+
+    def __init__(self, model: QAbstractItemModel, name: str, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.setAccessibleName(name)
+        self.setModel(model)
+        self._kept = ""
+        self._widths_for: tuple[str, ...] = ()
+        self._spanned: list[int] = []
+        self._set_up()
+        self._copy_action = QAction(_("&Copy"), self)
+        self._copy_action.setShortcut(QKeySequence(QKeySequence.StandardKey.Copy))
+        self._copy_action.setShortcutContext(Qt.ShortcutContext.WidgetShortcut)
+        self._copy_action.triggered.connect(self.copy)
+        self.addAction(self._copy_action)
+        self._copy_all_action = QAction(_("Copy the &whole table"), self)
+        self._copy_all_action.triggered.connect(self.copy_all)
+        model.modelAboutToBeReset.connect(self._remember)
+        model.modelReset.connect(self._restore)
+        model.layoutChanged.connect(self._span)
+        self._restore()
+
+    def _set_up(self) -> None:
+        self.setItemDelegate(CellDelegate(self))
+        self.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectRows)
+        self.setSelectionMode(QAbstractItemView.SelectionMode.ExtendedSelection)
+        self.setFrameShape(QFrame.Shape.NoFrame)
+        self.setShowGrid(False)
+        self.setWordWrap(False)
+        self.setTabKeyNavigation(False)
+        self.setHorizontalScrollMode(QAbstractItemView.ScrollMode.ScrollPerPixel)
+        self.setVerticalScrollMode(QAbstractItemView.ScrollMode.ScrollPerPixel)
+        self.setContextMenuPolicy(Qt.ContextMenuPolicy.CustomContextMenu)
+        self.customContextMenuRequested.connect(self._menu)
+        rows = self.verticalHeader()
+        rows.hide()
+        rows.setSectionResizeMode(QHeaderView.ResizeMode.Fixed)
+        rows.setDefaultSectionSize(self.fontMetrics().height() + 9)
+        header = self.horizontalHeader()
+        header.setHighlightSections(False)
+        header.setMinimumSectionSize(36)
+        header.setSectionsMovable(True)
+        header.setDefaultAlignment(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter)
+        self.setSortingEnabled(True)
+        header.setSortIndicator(-1, Qt.SortOrder.AscendingOrder)
+        header.setSortIndicatorClearable(True)
+
+    # -- rows that survive a reset -----------------------------------------------------------
+
+    def _rows(self) -> HasRows:
+        return cast(HasRows, self.model())
+
+    def current_identity(self) -> str:
+        """Identity of the current row; empty for none."""
+        return self._rows().identity_of(self.currentIndex().row())
+
+    def choose(self, identity: str) -> None:
+        """Make the row of ``identity`` current, if it is shown."""
+        row = self._rows().row_of(identity)
+        if row >= 0:
+            column = max(self.currentIndex().column(), 0)
+            self.setCurrentIndex(self.model().index(row, column))
+            self.scrollTo(self.currentIndex())
+
+    def _remember(self) -> None:
+        self._kept = self.current_identity()
+
+    def _restore(self) -> None:
+        self._span()
+        self._set_widths()
+        if self._kept:
+            self.choose(self._kept)
+
+    def _span(self) -> None:
+        columns = self.model().columnCount()
+        if not self._spanned and not self._rows().heading_rows():
+            return
+        self.clearSpans()
+        self._spanned = self._rows().heading_rows() if columns > 1 else []
+        for row in self._spanned:
+            self.setSpan(row, 0, 1, columns)
+
+    def _set_widths(self) -> None:
+        """Widths from titles and texts, once per set of columns."""
+        model = self.model()
+        titles = tuple(
+            str(model.headerData(c, Qt.Orientation.Horizontal)) for c in range(model.columnCount())
+        )
+        if titles == self._widths_for or not model.rowCount():
+            return
+        self._widths_for = titles
+        per_character = self.fontMetrics().averageCharWidth() + 1
+        for column in range(len(titles)):
+            self.setColumnWidth(column, self._rows().column_width(column, per_character))
+
+    def currentChanged(self, current: Index, previous: Index) -> None:
+        super().currentChanged(current, previous)
+        if current.row() != previous.row():
+            self.chosen.emit(self._rows().identity_of(current.row()))
+
+    # -- copying -------------------------------------------------------------------------------
+
+    def copy(self) -> None:
+        """Put the selected rows on the clipboard, as TSV and HTML."""
+        indexes = self.selectionModel().selectedIndexes()
+        QGuiApplication.clipboard().setMimeData(self.model().mimeData(indexes))
+
+    def copy_all(self) -> None:
+        """Put all shown rows on the clipboard."""
+        QGuiApplication.clipboard().setMimeData(self.model().mimeData([]))
+
+    def _menu(self, where: QPoint) -> None:
+        menu = QMenu(self)
+        menu.setAccessibleName(_("Table menu"))
+        menu.addActions([self._copy_action, self._copy_all_action, *self.extra_actions()])
+        menu.exec(self.viewport().mapToGlobal(where))
+        menu.deleteLater()
+
+    def extra_actions(self) -> list[QAction]:
+        """Further actions of the context menu: those a page has added to the view."""
+        return [a for a in self.actions() if a is not self._copy_action]
