@@ -44,7 +44,8 @@ def _start(design: Design, plain: bool, shoppers: bool) -> Floats:
         exposure = np.exp(block.log_part).sum(axis=0)
         rate = (block.counts.sum(axis=0) + 0.5) / (exposure + 1.0)
         seen = exposure > 0.0
-        items[c] = np.log(rate) - np.log(rate[seen].mean() if seen.any() else 1.0)
+        level = float(rate[seen].mean()) if seen.any() else 1.0
+        items[c] = np.log(rate) - np.log(level)
     theta[lay.items] = items.ravel()
     theta[lay.ratio] = FIXED_AT_ONE if plain else 1.0
     theta[lay.category_ratio] = FIXED_AT_ONE if plain and shoppers else 0.0
@@ -64,9 +65,8 @@ def _start(design: Design, plain: bool, shoppers: bool) -> Floats:
 
 def _pooled(count: int, spread: float, common: float) -> Floats:
     """Precision of ``count`` effects N(m, spread^2) whose mean m is N(0, common^2)."""
-    covariance = spread**2 * np.eye(count) + common**2 * np.ones((count, count))
-    inverse: Floats = np.linalg.inv(covariance)
-    return inverse
+    covariance: Floats = spread**2 * np.eye(count) + common**2 * np.ones((count, count))
+    return np.asarray(np.linalg.inv(covariance), dtype=np.float64)
 
 
 def _prior(
@@ -131,7 +131,7 @@ def estimate(
     free = np.ones(lay.size, dtype=bool)
     free[lay.ratio] = not plain
     free[lay.category_ratio] = not (plain and with_shoppers)
-    effects = theta[lay.items].reshape(lay.n_clusters, lay.n_items)
+    effects: Floats = theta[lay.items].reshape(lay.n_clusters, lay.n_items)
     centre: Floats = np.full(lay.n_items, effects.mean())
     spread, dispersion = settings.priors.item, 1.0
     distribution = base.today.mean(axis=0)

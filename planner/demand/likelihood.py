@@ -189,6 +189,11 @@ class NestedLikelihood:
         """ln D (T, G) of one block, 0 where a segment is empty."""
         return self._state(block, c, theta).log_total
 
+    def shares(self, block: MarketBlock, c: int, theta: Floats) -> Floats:
+        """P(j | category) (T, J) of one block."""
+        state = self._state(block, c, theta)
+        return state.within * state.segment_share[:, self.segment]
+
     def expected_counts(self, block: MarketBlock, c: int, theta: Floats) -> Floats:
         """Expected choices (T, J) of one block; given the category's counts when only these are modelled."""
         state = self._state(block, c, theta)
@@ -233,11 +238,11 @@ class NestedLikelihood:
             added[part] = np.maximum(gradient[part] * np.tanh(0.5 * theta[part]), 0.0)
         return added
 
-    def evaluate(self, theta: Floats, with_scores: bool = False) -> Evaluation:
-        """Log-likelihood, gradient and information at theta."""
+    def evaluate(self, theta: Floats, with_scores: bool = False, with_information: bool = True) -> Evaluation:
+        """Log-likelihood, gradient and, when asked for, information (else zeros) at theta."""
         lay = self.layout
         gradient = np.zeros(lay.size)
-        information = np.zeros((lay.size, lay.size))
+        information = np.zeros((lay.size, lay.size) if with_information else (0, 0))
         scores = np.zeros((max(lay.n_stores, 1), lay.size if with_scores else 0))
         value = 0.0
         for c, block in enumerate(self.blocks):
@@ -246,7 +251,8 @@ class NestedLikelihood:
             pieces = _Pieces(self, block, c, theta, state)
             by_market = pieces.scores() if with_scores else None
             gradient += pieces.gradient()
-            pieces.add_information(information)
+            if with_information:
+                pieces.add_information(information)
             if by_market is not None:
                 np.add.at(scores, block.store, by_market)
         return Evaluation(value, gradient, information, scores)

@@ -15,6 +15,10 @@ from planner.demand.likelihood import Evaluation, NestedLikelihood
 
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
+Ints = NDArray[np.int64]
+
+# Newton decrement below which the last information is kept and updated.
+NEAR = 0.5
 
 
 @dataclass(frozen=True)
@@ -69,6 +73,57 @@ def _step(hessian: Floats, gradient: Floats) -> Floats:
     )
 
 
+@dataclass
+class _Climb:
+    """Where the iteration stands; private to ``maximise``."""
+
+    likelihood: NestedLikelihood
+    prior: Prior
+    moving: Ints
+    theta: Floats
+    evaluation: Evaluation
+    objective: float
+    evaluations: int = 1
+
+    def gradient(self) -> Floats:
+        """Gradient of likelihood plus prior, free parameters only."""
+        gap = self.theta - self.prior.centre
+        full: Floats = self.evaluation.gradient - self.prior.precision @ gap
+        return full[self.moving]
+
+    def hessian(self) -> Floats:
+        """Minus the curvature: information, curvature of the maps, prior."""
+        curvature = self.likelihood.map_curvature(self.theta, self.evaluation.gradient)
+        total = self.evaluation.information + np.diag(curvature) + self.prior.precision
+        return total[np.ix_(self.moving, self.moving)]
+
+    def move(self, step: Floats, with_information: bool) -> bool:
+        """Halve the step until the objective does not fall; False when no step helps."""
+        length = min(1.0, 2.0 / max(float(np.abs(step).max()), 1e-300))
+        while length > 1e-8:
+            trial = self.theta.copy()
+            trial[self.moving] += length * step
+            value = self.likelihood.value(trial) + self.prior.value(trial)
+            self.evaluations += 1
+            if value >= self.objective - 1e-12 * abs(self.objective):
+                self.theta = trial
+                self.evaluation = self.likelihood.evaluate(trial, with_information=with_information)
+                self.evaluations += 1
+                self.objective = value
+                return True
+            length *= 0.5
+        return False
+
+
+def _updated(hessian: Floats, step: Floats, fall: Floats) -> Floats:
+    """BFGS update of minus the curvature (Nocedal & Wright 2006, eq. 6.19)."""
+    along = hessian @ step
+    if float(step @ fall) <= 1e-12 * float(step @ along):
+        return hessian
+    updated: Floats = hessian - np.outer(along, along) / (step @ along) + np.outer(fall, fall) / (step @ fall)
+    return updated
+
+
 def maximise(
     likelihood: NestedLikelihood,
     start: Floats,
@@ -77,41 +132,36 @@ def maximise(
     rule: StopRule,
     progress: Progress | None = None,
 ) -> Maximum:
-    """Fisher scoring with step halving; stops on the Newton decrement.
+    """Fisher scoring, then BFGS steps from the last information near the top.
 
+    Fisher scoring is fast far away and only linear near the maximum; the updates make the end
+    superlinear and cost a gradient each.  Stops on the Newton decrement.
     free (P,): parameters that move; the others stay at ``start``.
     """
     watch: Progress = progress if progress is not None else NoProgress()
-    theta = start.copy()
-    evaluation = likelihood.evaluate(theta)
-    objective = evaluation.value + prior.value(theta)
-    evaluations, decrement = 1, np.inf
-    moving = np.flatnonzero(free)
-    for iteration in range(1, rule.iterations + 1):
+    first = likelihood.evaluate(start)
+    climb = _Climb(
+        likelihood, prior, np.flatnonzero(free), start.copy(), first, first.value + prior.value(start)
+    )
+    decrement, near, converged, iteration = np.inf, False, False, 0
+    hessian = climb.hessian()
+    while iteration < rule.iterations:
         stop_if_cancelled(watch)
-        gradient = evaluation.gradient - prior.precision @ (theta - prior.centre)
-        curvature = np.diag(likelihood.map_curvature(theta, evaluation.gradient))
-        hessian = (evaluation.information + curvature + prior.precision)[np.ix_(moving, moving)]
-        step = np.zeros_like(theta)
-        step[moving] = _step(hessian, gradient[moving])
-        decrement = float(gradient[moving] @ step[moving])
+        gradient = climb.gradient()
+        step = _step(hessian, gradient)
+        decrement = float(gradient @ step)
         if decrement < rule.decrement:
-            return Maximum(theta, evaluation, True, iteration - 1, evaluations, decrement)
-        length = min(1.0, 2.0 / max(float(np.abs(step[moving]).max()), 1e-300))
-        while True:
-            trial = theta + length * step
-            value = likelihood.value(trial) + prior.value(trial)
-            evaluations += 1
-            if value >= objective - 1e-10 * abs(objective):
-                break
-            length *= 0.5
-            if length < 1e-10:
-                # Rounding, not curvature, stops the climb here.
-                settled = decrement < 1e3 * rule.decrement
-                return Maximum(theta, evaluation, settled, iteration, evaluations, decrement)
-        theta = trial
-        evaluation = likelihood.evaluate(theta)
-        evaluations += 1
-        objective = evaluation.value + prior.value(theta)
+            converged = True
+            break
+        iteration += 1
+        near = near or decrement < NEAR
+        before = climb.theta
+        if not climb.move(step, with_information=not near):
+            # Rounding, not curvature, stops the climb here.
+            converged = decrement < 1e3 * rule.decrement
+            break
+        moved = (climb.theta - before)[climb.moving]
+        hessian = _updated(hessian, moved, gradient - climb.gradient()) if near else climb.hessian()
         watch.report(_("Fitting the share model"), min(0.95, iteration / 25))
-    return Maximum(theta, evaluation, False, rule.iterations, evaluations, decrement)
+    final = likelihood.evaluate(climb.theta)
+    return Maximum(climb.theta, final, converged, iteration, climb.evaluations + 1, decrement)

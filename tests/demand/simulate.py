@@ -45,7 +45,9 @@ def simulate(recipe: Recipe) -> tuple[MarketPanel, Catalogue, BaseWeek, np.ndarr
     promo = rng.random((w, n)) < 0.08
     price = np.where(promo, 0.8, 1.0) * regular
     base_price = regular[-1]
-    utility = effects[cluster][:, None] + recipe.price * np.log(regular / base_price) + recipe.promotion * promo
+    utility = (
+        effects[cluster][:, None] + recipe.price * np.log(regular / base_price) + recipe.promotion * promo
+    )
     weight = on_sale * np.exp(utility)
     members = (segment[:, None] == np.arange(g)).astype(float)
     total = weight @ members
@@ -55,7 +57,9 @@ def simulate(recipe: Recipe) -> tuple[MarketPanel, Catalogue, BaseWeek, np.ndarr
     store = rng.normal(0.0, 0.2, s)
     week = rng.normal(0.0, 0.1, w)
     eta = store[:, None] + week + recipe.category * np.log(inclusive)
-    share = (weight / np.maximum(total, 1e-300)[:, :, segment]) * (level / inclusive[:, :, None])[:, :, segment]
+    share = (weight / np.maximum(total, 1e-300)[:, :, segment]) * (level / inclusive[:, :, None])[
+        :, :, segment
+    ]
     if recipe.shoppers is None:
         eta = eta - eta.mean() + np.log(recipe.units_per_item * n * 0.6)
         category = rng.poisson(np.exp(eta))
@@ -88,6 +92,9 @@ def simulate(recipe: Recipe) -> tuple[MarketPanel, Catalogue, BaseWeek, np.ndarr
     )
     window = panel.week_index >= w - 13
     mean_units = np.stack([units[window & (panel.store_index == i)].mean(axis=0) for i in range(s)])
+    visits_now = None
+    if shoppers is not None:
+        visits_now = np.array([shoppers[window & (panel.store_index == i)].mean() for i in range(s)])
     base = BaseWeek(
         today=listed[:, -1],
         units=mean_units,
@@ -97,7 +104,9 @@ def simulate(recipe: Recipe) -> tuple[MarketPanel, Catalogue, BaseWeek, np.ndarr
         cost=0.6 * base_price,
         margin=np.tile(0.4 * base_price, (2, 1)),
         net_price=np.tile(base_price, (2, 1)),
-        shoppers=None if shoppers is None else np.array([shoppers[window & (panel.store_index == i)].mean() for i in range(s)]),
+        shoppers=None
+        if shoppers is None
+        else np.array([shoppers[window & (panel.store_index == i)].mean() for i in range(s)]),
         space_cm=np.ones(n),
         space_limit=listed[:, -1].sum(axis=1).astype(float),
         space_known=False,

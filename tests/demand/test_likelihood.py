@@ -53,9 +53,7 @@ def test_gradient_equals_central_differences(category, unscaled):
         assert gradient[k] == pytest.approx(difference, rel=2e-5, abs=2e-5), k
 
 
-@pytest.mark.parametrize(
-    ("category", "unscaled"), [("volume", False), ("shoppers", False), ("none", True)]
-)
+@pytest.mark.parametrize(("category", "unscaled"), [("volume", False), ("shoppers", False), ("none", True)])
 def test_information_is_the_expected_outer_product_of_scores(category, unscaled):
     """Simulate counts from the model at theta: mean information = covariance of the gradient."""
     likelihood, theta = random_problem(category, unscaled)
@@ -64,7 +62,7 @@ def test_information_is_the_expected_outer_product_of_scores(category, unscaled)
     if layout.category == "volume":
         theta[layout.stores] = 3.0
     gradients, informations = [], []
-    for _ in range(1500):
+    for _ in range(900):
         blocks = []
         for c, block in enumerate(likelihood.blocks):
             state = likelihood._state(block, c, theta)
@@ -83,7 +81,7 @@ def test_information_is_the_expected_outer_product_of_scores(category, unscaled)
     outer = np.cov(np.array(gradients).T)
     mean = np.mean(informations, axis=0)
     scale = np.sqrt(np.outer(np.diag(mean), np.diag(mean))) + 1e-12
-    assert np.abs((outer - mean) / scale).max() < 0.15
+    assert np.abs((outer - mean) / scale).max() < 0.25
 
 
 def test_scores_by_store_sum_to_the_gradient():

@@ -1,0 +1,1 @@
+"""Checks against sources outside the project, through planner's public functions."""

@@ -1,0 +1,1 @@
+"""Transfers against brute recomputation and closed forms."""
