@@ -104,9 +104,7 @@ def simulate(recipe: Recipe) -> tuple[MarketPanel, Catalogue, BaseWeek, np.ndarr
         cost=0.6 * base_price,
         margin=np.tile(0.4 * base_price, (2, 1)),
         net_price=np.tile(base_price, (2, 1)),
-        shoppers=None
-        if shoppers is None
-        else np.array([shoppers[window & (panel.store_index == i)].mean() for i in range(s)]),
+        shoppers=visits_now,
         space_cm=np.ones(n),
         space_limit=listed[:, -1].sum(axis=1).astype(float),
         space_known=False,
