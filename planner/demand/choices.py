@@ -64,6 +64,32 @@ def _check(data: ChoiceData) -> None:
         )
 
 
+def choice_likelihood(data: ChoiceData) -> tuple[NestedLikelihood, MarketBlock]:
+    """The likelihood of choices among the items, and its only block."""
+    n_markets, n_items = data.counts.shape
+    n_nests = int(data.nest.max()) + 1
+    layout = Layout(1, n_items, data.covariates.shape[2], n_nests, 0, 0, 0, CATEGORY_NONE, unscaled=True)
+    block = MarketBlock(
+        counts=np.asarray(data.counts, dtype=np.float64),
+        log_part=np.where(data.available, 0.0, -np.inf),
+        covariates=np.asarray(data.covariates, dtype=np.float64),
+        season=np.zeros((n_markets, 0)),
+        store=np.zeros(n_markets, dtype=np.int64),
+        week=np.zeros(n_markets, dtype=np.int64),
+        shoppers=np.zeros(n_markets),
+    )
+    return NestedLikelihood((block,), data.nest, layout), block
+
+
+def pack(layout: Layout, values: Floats) -> Floats:
+    """theta of the plain logit with these constants and coefficients, in this order."""
+    theta = np.zeros(layout.size)
+    theta[: values.size] = values
+    theta[layout.ratio] = FIXED_AT_ONE
+    theta[layout.category_ratio] = FIXED_AT_ONE
+    return theta
+
+
 def _textbook(maximum: Maximum, layout: Layout, free: Bools, nest: Ints) -> tuple[Floats, Floats]:
     """Estimates (alpha, beta, lambda) and their covariance from the scaled parameters (delta method).
 
@@ -103,19 +129,9 @@ def fit_choices(
     keep 1.  Raises FitError on choices of unavailable items or effects that cannot be told apart.
     """
     _check(data)
-    n_markets, n_items = data.counts.shape
-    n_nests = int(data.nest.max()) + 1
-    layout = Layout(1, n_items, data.covariates.shape[2], n_nests, 0, 0, 0, CATEGORY_NONE, unscaled=True)
-    block = MarketBlock(
-        counts=np.asarray(data.counts, dtype=np.float64),
-        log_part=np.where(data.available, 0.0, -np.inf),
-        covariates=np.asarray(data.covariates, dtype=np.float64),
-        season=np.zeros((n_markets, 0)),
-        store=np.zeros(n_markets, dtype=np.int64),
-        week=np.zeros(n_markets, dtype=np.int64),
-        shoppers=np.zeros(n_markets),
-    )
-    likelihood = NestedLikelihood((block,), data.nest, layout)
+    likelihood, block = choice_likelihood(data)
+    layout = likelihood.layout
+    n_nests = layout.n_segments
     free = np.ones(layout.size, dtype=bool)
     free[layout.items] = base_item is not None
     if base_item is not None:
@@ -123,14 +139,13 @@ def fit_choices(
     shared = np.bincount(data.nest, minlength=n_nests) > 1
     free[layout.ratio] = shared & nested
     free[layout.category_ratio] = False
-    theta = np.zeros(layout.size)
-    theta[layout.category_ratio] = FIXED_AT_ONE
+    theta = pack(layout, np.zeros(layout.n_items + layout.n_covariates))
     theta[layout.ratio] = np.where(shared & nested, 1.0, FIXED_AT_ONE)
     flat = Prior(np.zeros(layout.size), np.zeros((layout.size, layout.size)))
     maximum = maximise(likelihood, theta, flat, free, stop or StopRule(1e-12, 200))
     values, spread = _textbook(maximum, layout, free, data.nest)
     errors = np.sqrt(np.maximum(np.diag(spread), 0.0))
-    first, second = n_items, n_items + layout.n_covariates
+    first, second = layout.n_items, layout.n_items + layout.n_covariates
     shares = likelihood.shares(block, 0, maximum.theta)
     return ChoiceFit(
         constants=values[:first],

@@ -17,7 +17,7 @@ their sum is positive semidefinite everywhere.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -226,6 +226,22 @@ class NestedLikelihood:
         elif self.layout.category == CATEGORY_SHOPPERS:
             value += float((category * state.eta - block.shoppers * np.logaddexp(0.0, state.eta)).sum())
         return value
+
+    def at_expected_counts(self, theta: Floats) -> NestedLikelihood:
+        """The same likelihood with every count replaced by its expectation at theta."""
+        blocks = tuple(
+            replace(block, counts=self.expected_counts(block, c, theta))
+            for c, block in enumerate(self.blocks)
+        )
+        return NestedLikelihood(blocks, self.segment, self.layout)
+
+    def market_scores(self, theta: Floats) -> Floats:
+        """Score of every market (all blocks' markets in order, P)."""
+        parts = [
+            _Pieces(self, block, c, theta, self._state(block, c, theta)).scores()
+            for c, block in enumerate(self.blocks)
+        ]
+        return np.concatenate(parts)
 
     def map_curvature(self, theta: Floats, gradient: Floats) -> Floats:
         """What the logistic maps of rho and lambda_c add to the curvature, (P,), where positive.
