@@ -134,11 +134,23 @@ class _State:
     eta: Floats  # (T,)
 
 
+def _split(block: MarketBlock, size: int) -> list[MarketBlock]:
+    """Views of at most ``size`` markets each, in order."""
+    return [
+        MarketBlock(**{name: values[k : k + size] for name, values in block.__dict__.items()})
+        for k in range(0, block.counts.shape[0], size)
+    ]
+
+
 class NestedLikelihood:
     """The likelihood over all cluster blocks.  segment (J,): segment of every item."""
 
-    def __init__(self, blocks: tuple[MarketBlock, ...], segment: Ints, layout: Layout) -> None:
+    def __init__(
+        self, blocks: tuple[MarketBlock, ...], segment: Ints, layout: Layout, chunk: int = 192
+    ) -> None:
         self.blocks = blocks
+        # Pieces that fit the processor's cache.
+        self._parts = [(c, part) for c, block in enumerate(blocks) for part in _split(block, chunk)]
         self.segment = segment
         self.layout = layout
         self._membership = np.zeros((segment.size, layout.n_segments))
@@ -211,7 +223,7 @@ class NestedLikelihood:
         Multinomial and binomial coefficients and ln(units!) are left out: they do not depend on theta.
         """
         total = 0.0
-        for c, block in enumerate(self.blocks):
+        for c, block in self._parts:
             total += self._block_value(block, self._state(block, c, theta))
         return total if np.isfinite(total) else -np.inf
 
@@ -261,7 +273,7 @@ class NestedLikelihood:
         information = np.zeros((lay.size, lay.size) if with_information else (0, 0))
         scores = np.zeros((max(lay.n_stores, 1), lay.size if with_scores else 0))
         value = 0.0
-        for c, block in enumerate(self.blocks):
+        for c, block in self._parts:
             state = self._state(block, c, theta)
             value += self._block_value(block, state)
             pieces = _Pieces(self, block, c, theta, state)
