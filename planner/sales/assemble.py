@@ -90,9 +90,7 @@ def judge_rows(request: LoadRequest, tables: dict[str, Matched]) -> JudgedRows:
                 columns=items_table.raw.headers()
             ),
             place=items_table.raw.file,
-            remedy=_(
-                "Say which with --match items.segment=NAME, or build segments with --segment-by COLUMN."
-            ),
+            remedy=_("Say which with --match items.segment=NAME, or build them with --segment-by COLUMN."),
         )
     ours, cells = date_column(sales)
     calendar = settle_calendar(sales, ours, cells)
@@ -165,13 +163,9 @@ def _shelf(placed: Placed, notes: list[str]) -> Shelf:
     heirs = np.unique(axes.item[target[target != np.arange(target.size)]])
     bridged = bridge_successors(shelf.listed, placed.cubes.open, heirs[heirs >= 0], SUCCESSOR_GAP_WEEKS)
     shelf = replace(shelf, listed=bridged)
-    if shelf.missing.any():
-        notes.append(
-            _(
-                "{n} item-store-weeks without a sale are too improbable for an item on the shelf and count as "
-                "out of stock."
-            ).format(n=int(shelf.missing.sum()))
-        )
+    empty = int((shelf.listed & ~shelf.on_shelf).sum())
+    if empty:
+        notes.append(_("{n} item-store-weeks of listed items count as out of stock.").format(n=empty))
     rows = judged.rows
     week = (rows.monday - axes.start) // 7
     store, item = axes.store[rows.store], axes.item[rows.item]
@@ -225,7 +219,8 @@ def _last_checks(placed: Placed, base: BaseWeek) -> None:
     ledger, catalogue = placed.judged.ledger, placed.catalogue
     file = placed.judged.tables["items"].raw.file
     with np.errstate(invalid="ignore"):
-        dear = np.flatnonzero((base.margin < 0.0).any(axis=0))
+        matters = base.today.any(axis=0) | np.array([item.is_offer for item in catalogue.items])
+        dear = np.flatnonzero((base.margin < 0.0).any(axis=0) & matters)
     ledger.note_other("cost_above_price", [(file, 0, catalogue.items[j].code) for j in dear])
     cut = np.flatnonzero(placed.cubes.part < 1.0)
     rows = placed.judged.rows

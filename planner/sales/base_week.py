@@ -22,7 +22,8 @@ NAMED = 8
 @dataclass(frozen=True)
 class WeekInputs:
     """today (S, J): listed now, or None when the last week tells.  cost, margin_rate (J,): NaN where
-    unknown; a cost outranks a rate (of the price net of VAT).  part (W,): part of each week that the file covers.
+    unknown; a cost outranks a rate (of the price net of VAT).  part (W,): part of each week that
+    the file covers.
     """
 
     today: Bools | None
@@ -138,9 +139,10 @@ def _limits(catalogue: Catalogue, space: Floats, today: Bools, known: bool, note
     tight = [code for code, room, used in zip(codes, given, use, strict=True) if room < used - 1e-6]
     if tight:
         notes.append(
-            _("Today's items take more than the given space in {n} stores; today's use is their limit: {names}.")
-            .format(n=len(tight), names=_names(tight))
-        )  # fmt: skip
+            _("Today's items need more than the given space in {n} stores, raised to that: {names}.").format(
+                n=len(tight), names=_names(tight)
+            )
+        )
     result: Floats = np.fmax(given, use)
     return result
 

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from datetime import date
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -56,9 +57,11 @@ def build_cubes(rows: SalesRows, store: Ints, item: Ints, n_stores: int, n_items
     cell = (store * n_weeks + week) * n_items + item
 
     def total(values: Floats | None) -> Floats:
-        return np.bincount(cell, values, minlength=int(np.prod(shape))).reshape(shape)
+        sums = np.bincount(cell, values, minlength=int(np.prod(shape)))
+        return sums.reshape(shape).astype(np.float64)
 
-    count = total(None).astype(np.float64)
+    count = total(None)
+    opened: Bools = np.any(count > 0, axis=2)
 
     def known_total(values: Floats | None) -> tuple[Floats, Floats] | None:
         if values is None:
@@ -78,7 +81,7 @@ def build_cubes(rows: SalesRows, store: Ints, item: Ints, n_stores: int, n_items
     # Netted returns leave rounding dust in weighed units.
     units = np.where(np.abs(units) < 1e-9, 0.0, np.maximum(units, 0.0))
     return Cubes(
-        start, count, units, total(rows.money), (count > 0).any(axis=2), _covered(rows, week, n_weeks),
+        start, count, units, total(rows.money), opened, _covered(rows, week, n_weeks),
         mean(_positive(rows.price)), mean(_positive(rows.regular_price)), mean(rows.promotion),
         mean(rows.display), mean(rows.cost), mean(rows.on_sale), summed(rows.days_on_sale),
         summed(rows.days_out_of_stock),
@@ -119,9 +122,7 @@ def find_shelf(cubes: Cubes, ranges: Ranges | None, settings: OnSaleSettings) ->
             listed = np.where(own, (ranges.in_range | seen) & cubes.open[:, :, None], listed)
             shelf = listed & seen
         nothing = np.zeros(seen.shape, dtype=bool)
-        return Shelf(listed, shelf, nothing, nothing, np.zeros_like(nothing[:, 0])), _(
-            "On sale or not: the flag in the sales table."
-        )
+        return Shelf(listed, shelf, nothing, nothing[:, 0]), _("On sale or not: the flag in the sales table.")
     if ranges is not None:
         found = ranged_shelf(ranges.in_range, ranges.named, cubes.units, seen, cubes.open, settings)
         return found, _("On sale or not: the ranges table.")
@@ -132,11 +133,11 @@ def find_shelf(cubes: Cubes, ranges: Ranges | None, settings: OnSaleSettings) ->
         _("On sale or not: weeks with a row, because the file also has rows for weeks without sales.")
         if complete
         else _(
-            "On sale or not: inferred from first to last sale in each store; a gap longer than {n} weeks whose "
-            "chance is below {p:g} at the item's own rate of sale counts as out of stock."
+            "On sale or not: inferred from first to last sale in each store; a gap longer than {n} weeks "
+            "whose chance is below {p:g} at the item's own rate of sale counts as out of stock."
         ).format(n=settings.gap_weeks, p=settings.improbable)
     )
-    return Shelf(listed, shelf, nothing, listed & ~shelf, np.zeros_like(nothing[:, 0])), words
+    return Shelf(listed, shelf, nothing, nothing[:, 0]), words
 
 
 def bridge_successors(listed: Bools, opened: Bools, items: Ints, weeks: int) -> Bools:
@@ -145,7 +146,7 @@ def bridge_successors(listed: Bools, opened: Bools, items: Ints, weeks: int) -> 
     for j in items:
         for s in range(listed.shape[0]):
             on = np.flatnonzero(listed[s, :, j])
-            for a, b in zip(on[:-1], on[1:], strict=True):
+            for a, b in pairwise(on):
                 if 1 < b - a <= weeks + 1:
                     result[s, a:b, j] = opened[s, a:b]
     return result
@@ -222,11 +223,3 @@ def listing_events(catalogue: Catalogue, panel: MarketPanel) -> tuple[ListingEve
         )
         for t, j, kind in found
     )
-
-
-def without_unlisted_items(shelf: Shelf, offers: Ints) -> Shelf:
-    """Offers are on no shelf."""
-    listed, on_shelf = shelf.listed.copy(), shelf.on_shelf.copy()
-    listed[:, :, offers] = False
-    on_shelf[:, :, offers] = False
-    return replace(shelf, listed=listed, on_shelf=on_shelf)

@@ -37,7 +37,7 @@ WORDS: dict[str, tuple[str, str]] = {
     "sign_mismatch": (_("Units and money with opposite signs"), _("set aside")),
     "zero_price": (_("Units sold for no money"), _("set aside")),
     "money_without_units": (_("Money without units"), _("set aside")),
-    "absurd_price": (_("Price more than ten times, or less than a tenth of, the item's median"), _("set aside")),
+    "absurd_price": (_("Price above ten times, or below a tenth of, the item's median"), _("set aside")),
     "return_set_aside": (_("Returns that exceed the week's sales"), _("set aside")),
     "return_netted": (_("Returns (negative units)"), _("netted in the week")),
     "closed_store": (_("Store without sales in the latest weeks"), _("set aside")),
@@ -109,12 +109,13 @@ class Ledger:
             before = self.noted.get(code)
             rows = len(examples) + (before.rows if before else 0)
             shown = ((before.examples if before else ()) + tuple(examples))[:EXAMPLES]
-            self.noted[code] = Check(code, title, rows, money, False, treatment, shown)
+            self.noted[code] = Check(code, title, rows, Decimal(0), False, treatment, shown)
 
     @property
     def used(self) -> Bools:
         """Rows in use (n,)."""
-        return self.reason == 0
+        used: Bools = self.reason == 0
+        return used
 
     def checks(self) -> tuple[Check, ...]:
         """Every check that found something, set aside or not, in the report's order."""

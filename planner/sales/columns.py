@@ -10,8 +10,12 @@ import pyarrow as pa
 import pyarrow.compute as pc
 from numpy.typing import NDArray
 
+from planner.base.text import _
+
 Codes = NDArray[np.int32]
 Ints = NDArray[np.int64]
+
+HEADERS_SHOWN = 40
 
 
 @dataclass(frozen=True)
@@ -37,10 +41,10 @@ class TextColumn:
     def cells(self, rows: Ints) -> list[str]:
         """The cells of some rows, blank as ''."""
         picked = self.codes[rows]
-        texts = self.values.take(pa.array(np.maximum(picked, 0))) if len(self.values) else []
-        return ["" if code < 0 else str(text) for code, text in zip(picked, texts, strict=False)] or [
-            ""
-        ] * len(rows)
+        if len(self.values) == 0:
+            return [""] * len(rows)
+        texts: list[str] = self.values.take(pa.array(np.maximum(picked, 0))).to_pylist()
+        return ["" if code < 0 else text for code, text in zip(picked, texts, strict=True)]
 
 
 def text_column(column: pa.ChunkedArray | pa.Array) -> TextColumn:
@@ -108,7 +112,10 @@ class RawTable:
 
     def headers(self) -> str:
         """The headers that are there, for messages."""
-        return ", ".join(self.columns)
+        names = list(self.columns)
+        more = len(names) - HEADERS_SHOWN
+        shown = ", ".join(name[:60] for name in names[:HEADERS_SHOWN])
+        return shown if more <= 0 else _("{shown} and {n} more").format(shown=shown, n=more)
 
     def frame(self, picked: Ints, reasons: list[str]) -> pd.DataFrame:
         """Some rows as text with file, row and reason in front."""

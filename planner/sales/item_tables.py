@@ -56,17 +56,13 @@ def _report_unreadable(table: Matched, names: tuple[str, ...], marks: dict[str, 
     for name in names:
         if not table.has(name):
             continue
-        bad = np.flatnonzero(read_numbers(table.column(name), marks[name]).bad)
-        header = table.names[name]
+        rows = np.flatnonzero(read_numbers(table.column(name), marks[name]).bad)
+        cells = table.column(name).cells(rows)
         ledger.note_other(
             "unreadable_cell",
             [
-                (
-                    table.raw.file,
-                    int(table.raw.rows[k]),
-                    f"{header}={table.column(name).cells(bad[i : i + 1])[0]}",
-                )
-                for i, k in enumerate(bad)
+                (table.raw.file, int(table.raw.rows[row]), f"{table.names[name]}={cell}")
+                for row, cell in zip(rows, cells, strict=True)
             ],
         )
 
@@ -164,7 +160,9 @@ def read_items(table: Matched, ledger: Ledger, segment_by: tuple[str, ...], offe
             keep=bool(keep[k]),
             is_offer=offers,
             offered_to=_clusters(texts["clusters"][k]),
-            attributes=tuple((name, values[k]) for name, values in extra.items() if values[k] is not None),
+            attributes=tuple(
+                (name, value) for name, cells in extra.items() if (value := cells[k]) is not None
+            ),
         )
         rate = shares["margin_rate"][k]
         found.append(

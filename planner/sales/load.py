@@ -65,13 +65,13 @@ def load(request: LoadRequest, progress: Progress = NoProgress()) -> LoadedData:
     """
     tables = read_all(request, progress)
     progress.report(_("Checking rows"), 0.35)
-    work = judge_rows(request, tables)
+    judged = judge_rows(request, tables)
     stop_if_cancelled(progress)
     progress.report(_("Building the catalogue"), 0.65)
-    work = place_on_axes(work)
+    placed = place_on_axes(judged)
     stop_if_cancelled(progress)
     progress.report(_("Building the panel"), 0.75)
-    return assemble(work, progress)
+    return assemble(placed, progress)
 
 
 def read_all(request: LoadRequest, progress: Progress) -> dict[str, Matched]:

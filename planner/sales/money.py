@@ -117,10 +117,10 @@ def _distinct(texts: pa.StringArray, mark: str) -> tuple[Floats, NDArray[np.gene
     size = np.nanmax(np.abs(values), initial=0.0) * 10.0**scale
     if scale <= _MOST_DECIMALS and size < _EXACT_IN_FLOAT:
         minor: NDArray[np.generic] = np.rint(np.nan_to_num(values) * 10.0**scale).astype(np.int64)
-        for k, number in odd.items():
-            minor[k] = int(number.scaleb(scale))
+        for place, number in odd.items():
+            minor[place] = int(number.scaleb(scale))
         return values, minor, scale, state
-    exact = [odd.get(k, Decimal(0)) if not is_plain[k] else Decimal(numbers[k].as_py()) for k in range(n)]
+    exact = [Decimal(numbers[k].as_py()) if is_plain[k] else odd.get(k, Decimal(0)) for k in range(n)]
     return (
         values,
         np.array([int(number.scaleb(scale)) for number in exact] or [0], dtype=object),

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from planner.sales.runs import gaps
+from planner.sales.runs import fill_forward, gaps, window_sum
 
 Bools = NDArray[np.bool_]
 Floats = NDArray[np.float64]
@@ -16,50 +16,64 @@ Ints = NDArray[np.int64]
 
 @dataclass(frozen=True)
 class OnSaleSettings:
-    """gap_weeks: a gap this long is never out of stock.  improbable: a gap whose chance under the item's
-    own rate of sale (Poisson) is below this was no accident.  season_weeks: an improbable gap this long
-    is a delisting and a new listing.  bridge_weeks: at most so many empty weeks before a sale outside
-    the range still belong to it.
+    """How gaps in the sales of an item in a store are read.
+
+    gap_weeks: a gap inside the history of at most so many weeks is never out of stock.
+    improbable: a gap whose chance at the item's own rate of sale (Poisson) is below this was no accident.
+    rate_weeks: the rate is taken from so many weeks on either side of the gap.
+    season_weeks: an improbable gap this long is a delisting and a new listing.
+    bridge_weeks: at most so many empty weeks before a sale outside the range still belong to it.
     """
 
     gap_weeks: int = 2
     improbable: float = 0.001
+    rate_weeks: int = 8
     season_weeks: int = 16
     bridge_weeks: int = 2
 
 
 @dataclass(frozen=True)
 class Shelf:
-    """listed, on_shelf (S, W, J).  outside: sold outside the range.  missing: listed, yet so long
-    without a sale that it was out of stock.  unnamed (S, J): sold, but not in the ranges table.
+    """listed, on_shelf (S, W, J).
+
+    outside (S, W, J): a row in a week outside the item's range.
+    unnamed (S, J): sold, but the ranges table has no row for this store and item.
     """
 
     listed: Bools
     on_shelf: Bools
     outside: Bools
-    missing: Bools
     unnamed: Bools
 
 
-def rate_of_sale(units: Floats, seen: Bools, counted: Bools, gap_weeks: int) -> Floats:
-    """Units per week (S, J) between first and last sale, long gaps left out."""
-    length, before, after = gaps(seen, counted)
-    open_week = counted if counted.ndim == 3 else counted[:, :, None]
-    inside = open_week & (seen | (before & after & (length <= gap_weeks)))
-    weeks = inside.sum(axis=1)
-    rate: Floats = units.sum(axis=1) / np.maximum(weeks, 1)
+def rate_beside_gaps(units: Floats, seen: Bools, counted: Bools, weeks: int) -> Floats:
+    """Units per week (S, W, J) in the ``weeks`` weeks with data before and after each gap.
+
+    Local, so that the low season of a seasonal item is not taken for an empty shelf.
+    """
+    opened = np.broadcast_to(counted[:, :, None], seen.shape)
+    total, span = np.zeros(seen.shape), np.zeros(seen.shape)
+    for flip in (False, True):
+        part = [a[:, ::-1] if flip else a for a in (units, seen, opened)]
+        since_first = np.maximum.accumulate(part[1], axis=1) & part[2]
+        sums = [window_sum(a.astype(np.float64), weeks) for a in (part[0], since_first)]
+        at_gap = [fill_forward(np.where(part[1], a, np.nan)) for a in sums]
+        total += np.nan_to_num(at_gap[0][:, ::-1] if flip else at_gap[0])
+        span += np.nan_to_num(at_gap[1][:, ::-1] if flip else at_gap[1])
+    rate: Floats = total / np.maximum(span, 1.0)
     return rate
 
 
 def improbable_gaps(
     units: Floats, seen: Bools, counted: Bools, settings: OnSaleSettings
 ) -> tuple[Bools, Bools, Bools]:
-    """Weeks (S, W, J) in gaps that are improbable: inside the history, before the first row, after the last."""
+    """Weeks (S, W, J) in improbable gaps: between rows, before the first row, after the last.
+
+    seen: weeks with a row; counted (S, W): weeks in which the store has data.
+    """
     length, before, after = gaps(seen, counted)
-    rate = rate_of_sale(units, seen, counted, settings.gap_weeks)[:, None, :]
-    chance = np.exp(-rate * length)
-    open_week = counted if counted.ndim == 3 else counted[:, :, None]
-    unlikely = open_week & ~seen & (chance < settings.improbable)
+    chance = np.exp(-rate_beside_gaps(units, seen, counted, settings.rate_weeks) * length)
+    unlikely = counted[:, :, None] & ~seen & (chance < settings.improbable)
     inside = unlikely & before & after & (length > settings.gap_weeks)
     return inside, unlikely & ~before & after, unlikely & before & ~after
 
@@ -72,7 +86,7 @@ def writes_zero_rows(units: Floats, rows: Bools, counted: Bools) -> bool:
     zero_rows = int((rows & (units <= 0.0)).sum())
     if zero_rows < 20:
         return False
-    length, before, after = gaps(rows, counted)
+    _length, before, after = gaps(rows, counted)
     span = (counted[:, :, None] & (rows | (before & after))).sum(axis=1)
     rate = units.sum(axis=1) / np.maximum(span, 1)
     expected = float((span * np.exp(-rate))[span > 0].sum())
@@ -89,7 +103,7 @@ def infer_shelf(
     improbable gap inside counts as out of stock, a very long one as off the range.
     """
     length, before, after = gaps(seen, counted)
-    sold = seen.any(axis=1)[:, None, :]
+    sold: Bools = np.any(seen, axis=1)[:, None, :]
     open_week = counted[:, :, None]
     if complete:
         inside = open_week & ~seen & before & after
@@ -106,29 +120,23 @@ def ranged_shelf(
 ) -> Shelf:
     """The shelf by the ranges table; pairs of store and item that it does not name are inferred.
 
-    in_range (S, W, J); named (S, J): the table has a row for the pair.  Sales outside the range count
-    as on sale; a short empty gap between the range and such a sale stays listed, off the shelf.
+    in_range (S, W, J); named (S, J): the table has a row for the pair.  Rows outside the range count
+    as on sale; a short empty gap between the range and such a row stays listed, off the shelf.
     """
     open_week = counted[:, :, None]
     own = named[:, None, :]
     outside = seen & ~in_range & own & open_week
-    base = (in_range | outside) & open_week
-    length, before, after = gaps(base, counted)
-    lasting = gaps(in_range & open_week, counted)
-    joined = (
-        ~base & own & open_week & before & after & (length <= settings.bridge_weeks) & (lasting[0] > length)
-    )
-    # Only weeks in the range count: an item is not missing while it is delisted.
-    inside, start, end = improbable_gaps(units, seen, base, settings)
-    missing = base & (inside | start | end)
-    listed, on_shelf = base | joined, base & ~missing
+    on_shelf = (in_range | outside) & open_week
+    length, before, after = gaps(on_shelf, counted)
+    planned = gaps(in_range & open_week, counted)[0]
+    bridge = ~on_shelf & own & open_week & before & after
+    bridge &= (length <= settings.bridge_weeks) & (planned > length)
     guess_listed, guess_shelf = infer_shelf(units, seen, counted, False, settings)
     unnamed = ~named & seen.any(axis=1)
     pick = unnamed[:, None, :]
     return Shelf(
-        np.where(pick, guess_listed, listed),
+        np.where(pick, guess_listed, on_shelf | bridge),
         np.where(pick, guess_shelf, on_shelf),
         outside,
-        missing & own,
         unnamed,
     )

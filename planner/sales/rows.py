@@ -65,6 +65,8 @@ class SalesRows:
 
     def only(self, picked: Bools) -> SalesRows:
         """Some of the rows."""
+        if picked.all():
+            return self
         arrays = {
             field.name: getattr(self, field.name)[picked]
             for field in fields(self)
@@ -193,8 +195,10 @@ def _duplicates(read: ReadSales, ledger: Ledger, item: Ints, store: Ints) -> Non
     day = read.days.day[rows]
     if rows.size == 0:
         return
-    key = (store[rows] * (int(item.max()) + 1) + item[rows]) * (int(np.ptp(day)) + 1) + day - day.min()
-    twice = pd.Series(key).duplicated(keep=False).to_numpy()
+    there = np.bincount(day - day.min()) > 0
+    day = np.cumsum(there)[day - day.min()] - 1
+    key = (store[rows] * (int(item.max()) + 1) + item[rows]) * int(there.sum()) + day
+    twice = _repeated(key)
     if not twice.any():
         return
     suspects, keys = rows[twice], key[twice]
@@ -209,7 +213,19 @@ def _duplicates(read: ReadSales, ledger: Ledger, item: Ints, store: Ints) -> Non
     exact[suspects[repeats]] = True
     ledger.set_aside("duplicate_row", exact)
     left, left_keys = suspects[~repeats], keys[~repeats]
-    ledger.note("conflicting_duplicate", left[pd.Series(left_keys).duplicated(keep=False).to_numpy()])
+    # A return beside its sale is no conflict.
+    sold = read.units.values[left] >= 0.0
+    if sold.any():
+        ledger.note("conflicting_duplicate", left[sold][_repeated(left_keys[sold])])
+
+
+def _repeated(key: Ints) -> Bools:
+    """Keys (n,) that stand in more than one row."""
+    if int(key.max()) < max(4 * key.size, 1_000_000):
+        twice: Bools = np.bincount(key)[key] > 1
+    else:
+        twice = pd.Series(key).duplicated(keep=False).to_numpy()
+    return twice
 
 
 def _prices(ledger: Ledger, item: Ints, units: Floats, money: Floats) -> None:

@@ -1,4 +1,4 @@
-"""Runs of weeks in store x week x item cubes."""
+"""Runs, windows and medians in store x week x item cubes."""
 
 from __future__ import annotations
 
@@ -13,20 +13,12 @@ Floats = NDArray[np.float64]
 def weeks_back(marked: Bools, counted: Bools) -> Ints:
     """Counted weeks since the last marked one (S, W, J): 0 in a marked week, -1 before the first.
 
-    counted (S, W) or (S, W, J): weeks that count (the store has data, the item its place).
+    counted (S, W): weeks that count (the store has data).
     """
-    steps = _cube(counted)
-    result = np.full(marked.shape, -1, dtype=np.int64)
-    since = np.full((marked.shape[0], marked.shape[2]), -1, dtype=np.int64)
-    for w in range(marked.shape[1]):
-        since = np.where(marked[:, w], 0, np.where(since >= 0, since + steps[:, w], -1))
-        result[:, w] = since
+    passed = np.cumsum(counted, axis=1, dtype=np.int64)[:, :, None]
+    last = np.maximum.accumulate(np.where(marked, passed, -1), axis=1)
+    result: Ints = np.where(last >= 0, passed - last, -1)
     return result
-
-
-def _cube(counted: Bools) -> Ints:
-    cube: Ints = (counted if counted.ndim == 3 else counted[:, :, None]).astype(np.int64)
-    return cube
 
 
 def gaps(marked: Bools, counted: Bools) -> tuple[Ints, Bools, Bools]:
@@ -36,7 +28,7 @@ def gaps(marked: Bools, counted: Bools) -> tuple[Ints, Bools, Bools]:
     """
     back = weeks_back(marked, counted)
     ahead = weeks_back(marked[:, ::-1], counted[:, ::-1])[:, ::-1]
-    opened = _cube(counted)
+    opened = counted[:, :, None].astype(np.int64)
     total = np.cumsum(opened, axis=1)
     first, last = back < 0, ahead < 0
     # A gap at either end reaches to the store's first or last week with data.
@@ -46,19 +38,35 @@ def gaps(marked: Bools, counted: Bools) -> tuple[Ints, Bools, Bools]:
     return length, ~first, ~last
 
 
+def window_sum(values: Floats, weeks: int) -> Floats:
+    """Sum over the week itself and the ``weeks - 1`` before it, along axis 1."""
+    running = np.cumsum(values, axis=1)
+    result = running.copy()
+    result[:, weeks:] -= running[:, :-weeks]
+    return result
+
+
+def fill_forward(values: Floats, axis: int = 1) -> Floats:
+    """Unknown (NaN) values take the last known one along ``axis``."""
+    moved = np.moveaxis(values, axis, 0)
+    place = np.arange(moved.shape[0]).reshape(-1, *[1] * (moved.ndim - 1))
+    last = np.maximum.accumulate(np.where(np.isnan(moved), -1, place), axis=0)
+    filled = np.take_along_axis(moved, np.maximum(last, 0), axis=0)
+    result: Floats = np.moveaxis(filled, 0, axis)
+    return result
+
+
 def carry(values: Floats, axis: int = 1) -> Floats:
     """Unknown (NaN) values take the last known one along ``axis``, then the next one."""
-    result = np.moveaxis(values.copy(), axis, 0)
-    for direction in (result, result[::-1]):
-        for k in range(1, direction.shape[0]):
-            direction[k] = np.where(np.isnan(direction[k]), direction[k - 1], direction[k])
-    filled: Floats = np.moveaxis(result, 0, axis)
-    return filled
+    ahead = fill_forward(values, axis)
+    result: Floats = np.flip(fill_forward(np.flip(ahead, axis), axis), axis)
+    return result
 
 
 def upper_median(values: Floats) -> Floats:
     """The upper median over axis 0 of the known (not NaN) values: one of them, NaN when none."""
     ordered = np.sort(values, axis=0)
     known = (~np.isnan(values)).sum(axis=0)
-    picked: Floats = np.take_along_axis(ordered, (known // 2)[None].clip(max=values.shape[0] - 1), axis=0)[0]
+    place = np.minimum(known // 2, values.shape[0] - 1)
+    picked = np.take_along_axis(ordered, place[None], axis=0)[0]
     return np.where(known > 0, picked, np.nan)

@@ -22,7 +22,7 @@ class Joining:
     """Where every item's history goes.
 
     target (n,): position of the item that carries the history on (itself when none replaced it).
-    factor (n,): how many units of the target one unit of the item is.
+    factor (n,): how many units of the target one unit of the item is: 1 / pack factor.
     notes: each joining in words.
     """
 
@@ -39,6 +39,7 @@ def no_successors(n_items: int) -> Joining:
 def read_successors(table: Matched | None, items: CodeIndex, codes: list[str]) -> Joining:
     """Follow old -> new until the newest code.
 
+    The pack factor says how many old units one new unit holds (2: a twin pack replaced a single one).
     Raises DataError when a code would in the end replace itself.
     """
     target, factor = np.arange(len(codes)), np.ones(len(codes))
@@ -54,7 +55,7 @@ def read_successors(table: Matched | None, items: CodeIndex, codes: list[str]) -
     notes: list[str] = []
     for a, b, pack in zip(old, new, packs, strict=True):
         if a >= 0 and b >= 0 and a != b:
-            target[a], factor[a] = b, pack
+            target[a], factor[a] = b, 1.0 / float(pack)
     for row, (a, b) in enumerate(zip(old, new, strict=True)):
         if a < 0 or b < 0 or a == b:
             words = table.raw.line(row)
@@ -73,10 +74,10 @@ def read_successors(table: Matched | None, items: CodeIndex, codes: list[str]) -
                 place=table.raw.file,
                 remedy=_("Correct the rows that name it."),
             )
-    for a in np.flatnonzero(final != np.arange(len(codes))):
+    for a in np.flatnonzero(final != np.arange(len(codes))).tolist():
         notes.append(
             _("{old} was replaced by {new}; one history, 1 unit of {old} = {factor:g} of {new}.").format(
-                old=codes[int(a)], new=codes[int(final[a])], factor=float(total[a])
+                old=codes[a], new=codes[int(final[a])], factor=float(total[a])
             )
         )
     return Joining(final, total, tuple(notes))

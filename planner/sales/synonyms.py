@@ -17,7 +17,8 @@ _ITEM: Tiers = (
     "ean ean13 ean_code gtin gtin13 gtin14 upc upc_code barcode",
 )
 _STORE: Tiers = (
-    "store_no store_number store_id store_code store_nr store_num shop_no shop_id shop_code outlet_no outlet_id "
+    "store_no store_number store_id store_code store_nr store_num shop_no shop_id shop_code outlet_no "
+    "outlet_id "
     "outlet_code branch_no branch_id branch_code site_no site_id site_code location_id location_code "
     "storecd filial_nr filialnummer",
     "store shop outlet branch site location filiale markt",
@@ -29,7 +30,8 @@ _DATE: Tiers = (
 _WEEK: Tiers = (
     "week_commencing week_start week_starting week_beginning week_start_date week_of wc wk_commencing "
     "wk_start week_from",
-    "week week_no week_number week_id week_code wk wk_no iso_week year_week yearweek yw fiscal_week fin_week "
+    "week week_no week_number week_id week_code wk wk_no iso_week year_week yearweek yw fiscal_week "
+    "fin_week "
     "trading_week calendar_week kalenderwoche kw woche",
     "week_ending week_end week_end_date we wk_ending period",
 )
@@ -43,7 +45,8 @@ _COST: Tiers = (
     "cost_per_unit cost_ex_vat unit_cost_ex_vat einkaufspreis ek",
 )
 _PRICE: Tiers = (
-    "price unit_price selling_price sell_price retail_price actual_price avg_price average_price paid_price "
+    "price unit_price selling_price sell_price retail_price actual_price avg_price average_price "
+    "paid_price "
     "price_paid net_unit_price sales_price price_per_unit preis verkaufspreis",
 )
 _REGULAR: Tiers = (
@@ -51,7 +54,8 @@ _REGULAR: Tiers = (
     "everyday_price non_promo_price undiscounted_price normalpreis",
 )
 _CLUSTER: Tiers = (
-    "cluster store_cluster cluster_name cluster_id cluster_code store_group format store_format banner store_type",
+    "cluster store_cluster cluster_name cluster_id cluster_code store_group format store_format banner "
+    "store_type",
 )
 _SPACE: Tiers = (
     "space_cm space shelf_cm shelf_space shelf_space_cm category_space_cm category_space linear_cm "
@@ -66,7 +70,8 @@ _ITEM_COLUMNS: dict[str, Tiers] = {
     "gtin": _GTIN,
     "description": (
         "description item_description product_description item_desc product_desc item_name product_name "
-        "article_name article_description sku_name sku_description sku_desc desc long_description bezeichnung",
+        "article_name article_description sku_name sku_description sku_desc desc long_description "
+        "bezeichnung",
         "name title text item product article",
     ),
     "segment": (
@@ -87,7 +92,8 @@ _ITEM_COLUMNS: dict[str, Tiers] = {
     ),
     "content": (
         "content content_value net_content pack_content volume contents pack_size size net_weight weight "
-        "volume_l volume_ml weight_g weight_kg content_ml content_l content_g content_kg size_ml size_g inhalt",
+        "volume_l volume_ml weight_g weight_kg content_ml content_l content_g content_kg size_ml size_g "
+        "inhalt",
     ),
     "content_unit": (
         "content_unit unit_of_content content_uom size_unit size_uom volume_unit weight_unit uom "
@@ -99,12 +105,14 @@ _ITEM_COLUMNS: dict[str, Tiers] = {
     "rebate": ("rebate rebate_pct rebate_rate funding back_margin supplier_funding",),
     "margin_rate": ("margin_rate margin_pct margin_percent gross_margin_pct gm_pct",),
     "price": (
-        "price retail_price selling_price unit_price planned_price proposed_price intended_price consumer_price "
+        "price retail_price selling_price unit_price planned_price proposed_price intended_price "
+        "consumer_price "
         "regular_price shelf_price rrp base_price list_price recommended_price target_price",
     ),
     "space_cm": _SPACE,
     "width_cm": (
-        "width_cm width item_width item_width_cm pack_width pack_width_cm product_width product_width_cm unit_width "
+        "width_cm width item_width item_width_cm pack_width pack_width_cm product_width "
+        "product_width_cm unit_width "
         "unit_width_cm facing_width facing_width_cm breite",
         "width_mm pack_width_mm item_width_mm",
     ),
@@ -121,11 +129,13 @@ _ITEM_COLUMNS: dict[str, Tiers] = {
 _ON_SHELF: dict[str, Tiers] = {
     "days_on_sale": ("days_on_sale days_on_shelf days_available days_in_stock days_instock",),
     "days_out_of_stock": (
-        "days_out_of_stock days_oos oos_days out_of_stock_days stockout_days days_stockout days_without_stock "
+        "days_out_of_stock days_oos oos_days out_of_stock_days stockout_days days_stockout "
+        "days_without_stock "
         "oos_day_count",
     ),
     "on_sale": (
-        "on_sale on_sale_flag on_shelf on_shelf_flag is_on_shelf available availability available_flag listed "
+        "on_sale on_sale_flag on_shelf on_shelf_flag is_on_shelf available availability available_flag "
+        "listed "
         "listed_flag is_listed ranged ranged_flag in_range in_assortment instock_flag in_stock",
     ),
 }
@@ -148,13 +158,15 @@ COLUMNS: dict[str, dict[str, Tiers]] = {
             "turnover_inc_vat retail_value value_sales sales_inc_tax till_value umsatz",
         ),
         "revenue_net": (
-            "revenue_net net_revenue revenue_ex_vat revenue_excl_vat sales_ex_vat sales_value_ex_vat sales_excl_vat "
+            "revenue_net net_revenue revenue_ex_vat revenue_excl_vat sales_ex_vat sales_value_ex_vat "
+            "sales_excl_vat "
             "net_sales net_sales_value turnover_ex_vat turnover_net sales_net sales_ex_tax nettoumsatz",
         ),
         "price": _PRICE,
         "regular_price": _REGULAR,
         "promotion": (
-            "promotion promo promo_flag promotion_flag on_promo on_promotion is_promo is_promotion promoted "
+            "promotion promo promo_flag promotion_flag on_promo on_promotion is_promo is_promotion "
+            "promoted "
             "promo_ind promotion_indicator offer_flag on_offer promo_yn feature aktion",
         ),
         "display": (
@@ -173,7 +185,8 @@ COLUMNS: dict[str, dict[str, Tiers]] = {
             "store_cluster store_clusters",
         ),
         "earliest_week": (
-            "earliest_week earliest first_week available_from from_week first_possible_week available earliest_date",
+            "earliest_week earliest first_week available_from from_week first_possible_week available "
+            "earliest_date",
         ),
     },
     "stores": {
@@ -213,7 +226,8 @@ COLUMNS: dict[str, dict[str, Tiers]] = {
             "valid_from week_from listing_date listed_week first date_from in_range_from",
         ),
         "last_week": (
-            "last_week to_week to end_week to_date end_date last_date listed_to listed_until range_to valid_to "
+            "last_week to_week to end_week to_date end_date last_date listed_to listed_until range_to "
+            "valid_to "
             "week_to delisting_date delisted_week last until until_week date_to in_range_to",
         ),
     },
@@ -227,8 +241,8 @@ COLUMNS: dict[str, dict[str, Tiers]] = {
             "replacement replacement_item to_item item_new sku_new new_ean successor_item",
         ),
         "date": (
-            "date week from_week switch_date switch_week change_date change_week from_date effective_date "
-            "date_of_change start_week",
+            "date week changeover changeover_date changeover_week from_week switch_date switch_week "
+            "change_date change_week from_date effective_date date_of_change start_week",
         ),
         "pack_factor": (
             "pack_factor factor conversion conversion_factor unit_factor units_factor pack_ratio",
@@ -264,23 +278,5 @@ CHOICES: dict[str, str] = {
 # Column name endings that carry a unit: factor to centimetres.
 CENTIMETRES: dict[str, float] = {"mm": 0.1, "m": 100.0, "metres": 100.0, "meters": 100.0}
 CURRENCIES = frozenset(
-    [
-        "eur",
-        "euro",
-        "euros",
-        "gbp",
-        "usd",
-        "chf",
-        "sek",
-        "nok",
-        "dkk",
-        "pln",
-        "czk",
-        "huf",
-        "ron",
-        "cad",
-        "aud",
-        "nzd",
-        "jpy",
-    ]
+    "eur euro euros gbp usd chf sek nok dkk pln czk huf ron cad aud nzd jpy".split()  # noqa: SIM905
 )

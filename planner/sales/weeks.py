@@ -21,19 +21,21 @@ Bools = NDArray[np.bool_]
 
 FIRST_YEAR, LAST_YEAR = 1980, 2099
 _EXCEL_EPOCH = date(1899, 12, 30).toordinal()
-_MONTHS = {
-    name: k
-    for k, names in enumerate(
-        (
-            "jan january januar janvier", "feb february februar", "mar march mrz maerz mars", "apr april avril",
-            "may mai", "jun june juni juin", "jul july juli juillet", "aug august aout",
-            "sep sept september septembre", "oct october okt oktober octobre", "nov november novembre",
-            "dec december dez dezember decembre",
-        ),
-        start=1,
-    )
-    for name in names.split()
-}  # fmt: skip
+_MONTH_NAMES = (
+    "jan january januar janvier",
+    "feb february februar",
+    "mar march mrz maerz mars",
+    "apr april avril",
+    "may mai",
+    "jun june juni juin",
+    "jul july juli juillet",
+    "aug august aout",
+    "sep sept september septembre",
+    "oct october okt oktober octobre",
+    "nov november novembre",
+    "dec december dez dezember decembre",
+)
+_MONTHS = {name: k for k, names in enumerate(_MONTH_NAMES, start=1) for name in names.split()}
 
 
 @dataclass(frozen=True)
