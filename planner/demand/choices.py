@@ -74,6 +74,8 @@ def choice_likelihood(data: ChoiceData) -> tuple[NestedLikelihood, MarketBlock]:
         log_part=np.where(data.available, 0.0, -np.inf),
         covariates=np.asarray(data.covariates, dtype=np.float64),
         season=np.zeros((n_markets, 0)),
+        level=np.zeros((n_markets, n_nests, 0)),
+        category=np.zeros((n_markets, 0)),
         store=np.zeros(n_markets, dtype=np.int64),
         week=np.zeros(n_markets, dtype=np.int64),
         shoppers=np.zeros(n_markets),

@@ -91,24 +91,63 @@ def _discount_memory(panel: MarketPanel, depth: Floats, n_stores: int, weeks: in
     return result
 
 
+@dataclass(frozen=True)
+class Discounts:
+    """depth, memory (T, J): ln regular over paid price now, and its mean over the weeks before.
+
+    level (T, G, 2), category (T, 2): both weighted by what the items sell in the cluster, over
+    the segment and over the category.  Promotions make shoppers stock up; without terms of
+    their own these bulges and dips would pass for the answer to what is on the shelf.
+    """
+
+    depth: Floats
+    memory: Floats
+    level: Floats
+    category: Floats
+
+
+def _discounts(panel: MarketPanel, cluster: Ints, segment: Ints, n_segments: int, weeks: int) -> Discounts:
+    """All discount terms of the panel."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        depth = np.maximum(np.log(panel.regular_price / panel.price), 0.0)
+    depth = np.where(np.isfinite(depth) & panel.listed, depth, 0.0)
+    memory = _discount_memory(panel, depth, cluster.size, weeks)
+    of_market = cluster[panel.store_index]
+    weight = np.zeros_like(depth)
+    for c in np.unique(of_market):
+        weight[of_market == c] = panel.units[of_market == c].sum(axis=0)
+    weight = np.where(panel.listed, weight, 0.0)
+    members = (segment[:, None] == np.arange(n_segments)).astype(np.float64)
+    by_segment = np.maximum(weight @ members, 1e-9)
+    in_all = np.maximum(weight.sum(axis=1), 1e-9)
+    parts = [weight * values for values in (depth, memory)]
+    return Discounts(
+        depth,
+        memory,
+        np.stack([part @ members / by_segment for part in parts], axis=2),
+        np.stack([part.sum(axis=1) / in_all for part in parts], axis=1),
+    )
+
+
 def _covariates(
-    panel: MarketPanel, base: BaseWeek, cluster: Ints, settings: NestedSettings
+    panel: MarketPanel,
+    base: BaseWeek,
+    cluster: Ints,
+    discounts: Discounts,
+    settings: NestedSettings,
 ) -> tuple[Floats, list[str], list[str]]:
     """Covariates (T, J, K) that are all zero in the base week, with names and groups."""
     n_stores = cluster.size
     reference = base.price[cluster[panel.store_index]]
     with np.errstate(divide="ignore", invalid="ignore"):
         price = np.log(panel.regular_price / reference)
-        depth = np.maximum(np.log(panel.regular_price / panel.price), 0.0)
     price = np.where(np.isfinite(price), price, 0.0)
-    depth = np.where(np.isfinite(depth), depth, 0.0)
-    memory = _discount_memory(panel, depth, n_stores, settings.discount_memory)
     columns = [
         ("regular price, ln", "price", price),
-        ("discount depth, ln", "price", depth),
+        ("discount depth, ln", "price", discounts.depth),
         ("promotion", "promotion", panel.promotion),
         ("display", "promotion", panel.display),
-        ("discount depth, last weeks", "price", memory),
+        ("discount depth, last weeks", "price", discounts.memory),
     ]
     since = weeks_since_listing(panel, n_stores)
     ahead = weeks_to_delisting(panel, n_stores)
@@ -143,7 +182,8 @@ def build_design(
     """
     cluster = np.array(catalogue.cluster_of_store(), dtype=np.int64)
     segment = np.array(catalogue.segment_of_item(), dtype=np.int64)
-    covariates, names, groups = _covariates(panel, base, cluster, settings)
+    discounts = _discounts(panel, cluster, segment, len(catalogue.segments), settings.discount_memory)
+    covariates, names, groups = _covariates(panel, base, cluster, discounts, settings)
     # One year at most can be told from week effects; short histories get no season by segment.
     harmonics = settings.season_harmonics if len(panel.weeks) >= 40 else 0
     season = _season(panel, harmonics)
@@ -162,6 +202,8 @@ def build_design(
                 log_part=log_part[own],
                 covariates=covariates[own],
                 season=season[panel.week_index[own]],
+                level=discounts.level[own],
+                category=discounts.category[own],
                 store=panel.store_index[own],
                 week=panel.week_index[own],
                 shoppers=shoppers[own],
@@ -176,6 +218,8 @@ def build_design(
         n_stores=len(catalogue.stores),
         n_weeks=len(panel.weeks),
         category=CATEGORY_SHOPPERS if with_shoppers else CATEGORY_VOLUME,
+        n_level=discounts.level.shape[2],
+        n_category=discounts.category.shape[1],
     )
     window = season[-base.weeks :]
     price_column = names.index("regular price, ln") if "regular price, ln" in names else -1

@@ -22,6 +22,9 @@ Bools = NDArray[np.bool_]
 # logistic(FIXED_AT_ONE) is 1 to the last digit: a dissimilarity that is not estimated.
 FIXED_AT_ONE = 40.0
 
+# Prior standard deviation of a level that the data alone should set.
+FREE_LEVEL = 100.0
+
 
 @dataclass(frozen=True)
 class Estimation:
@@ -88,13 +91,16 @@ def _prior(
     for part, scale in (
         (lay.covariates, priors.covariate),
         (lay.season, priors.season),
+        (lay.level, priors.level),
         (lay.category_ratio, priors.category),
-        (lay.stores, priors.store),
+        (lay.category_effects, priors.level),
         (lay.weeks, priors.week),
     ):
         positions = np.arange(part.start, part.stop)
         precision[positions, positions] = 1.0 / scale**2
     precision[lay.ratio, lay.ratio] = _pooled(lay.n_segments, priors.ratio_spread, priors.ratio_common)
+    # Only differences between stores are bound: their level moves with every dissimilarity.
+    precision[lay.stores, lay.stores] = _pooled(lay.n_stores, priors.store, FREE_LEVEL)
     mean[lay.stores] = start[lay.stores].mean()
     return Prior(mean, precision * max(dispersion, 1.0))
 

@@ -4,9 +4,9 @@ Category and segments are nests (McFadden 1978; Verboven 1996).  In scaled form,
 rho_g = lambda_g / lambda_c (notation page of DEVELOPERS.md):
 
     V_jt = A_cj + sum_k X_jtk b_k          scaled utility; in unscaled form X_jtk b_k / lambda_g
-    D_gt = sum_j a_jt exp(V_jt)            G_gt = rho_g ln D_gt + sum_m z_tm h_gm
+    D_gt = sum_j a_jt exp(V_jt)            G_gt = rho_g ln D_gt + sum_m z_tm h_gm + f' l_gt
     P(j|g) = a_jt exp(V_jt) / D_gt         P(g|category) = exp(G_gt) / W_t,  W_t = sum_g exp(G_gt)
-    eta_t = store + week + lambda_c ln W_t
+    eta_t = store + week + lambda_c ln W_t + e' k_t
     category volume: Poisson(exp(eta)) without shoppers, Binomial(N, logistic(eta)) with,
     nothing at all when only choices among the items are observed.
 
@@ -32,6 +32,7 @@ CATEGORY_NONE, CATEGORY_VOLUME, CATEGORY_SHOPPERS = "none", "volume", "shoppers"
 class MarketBlock:
     """The markets of one cluster.
 
+    level (T, G, L): what moves a segment beyond its shelf; category (T, E): what moves the category so.
     counts (T, J): choices.  log_part (T, J): ln of the part of the week on sale, -inf when absent.
     covariates (T, J, K).  season (T, M).  store, week (T,): positions among all stores and weeks.
     shoppers (T,): used in the shoppers form only (zeros otherwise).
@@ -41,6 +42,8 @@ class MarketBlock:
     log_part: Floats
     covariates: Floats
     season: Floats
+    level: Floats
+    category: Floats
     store: Ints
     week: Ints
     shoppers: Floats
@@ -50,7 +53,8 @@ class MarketBlock:
 class Layout:
     """Where each group of parameters stands in the parameter vector theta.
 
-    Order: A (C x J), b (K), logit rho (G), h (G x M), logit lambda_c (1), store (S), week (W).
+    Order: A (C x J), b (K), logit rho (G), h (G x M), f (L), logit lambda_c (1), e (E), store (S),
+    week (W).
     unscaled: covariates are divided by lambda_g (the textbook form); else they act on V directly.
     """
 
@@ -62,6 +66,8 @@ class Layout:
     n_stores: int
     n_weeks: int
     category: str
+    n_level: int = 0
+    n_category: int = 0
     unscaled: bool = False
 
     @property
@@ -85,14 +91,24 @@ class Layout:
         return slice(self.ratio.stop, self.ratio.stop + self.n_segments * self.n_season)
 
     @property
+    def level(self) -> slice:
+        """f."""
+        return slice(self.season.stop, self.season.stop + self.n_level)
+
+    @property
     def category_ratio(self) -> slice:
         """logit lambda_c."""
-        return slice(self.season.stop, self.season.stop + 1)
+        return slice(self.level.stop, self.level.stop + 1)
+
+    @property
+    def category_effects(self) -> slice:
+        """e."""
+        return slice(self.category_ratio.stop, self.category_ratio.stop + self.n_category)
 
     @property
     def stores(self) -> slice:
         """Store effects."""
-        return slice(self.category_ratio.stop, self.category_ratio.stop + self.n_stores)
+        return slice(self.category_effects.stop, self.category_effects.stop + self.n_stores)
 
     @property
     def weeks(self) -> slice:
@@ -181,6 +197,8 @@ class NestedLikelihood:
         level = rho * log_total
         if lay.n_season:
             level = level + block.season @ theta[lay.season].reshape(lay.n_segments, lay.n_season).T
+        if lay.n_level:
+            level = level + block.level @ theta[lay.level]
         level = np.where(empty, -np.inf, level)
         peak = level.max(axis=1)
         peak = np.where(np.isfinite(peak), peak, 0.0)
@@ -191,6 +209,7 @@ class NestedLikelihood:
         eta = lambda_c * log_inclusive
         if lay.category != CATEGORY_NONE:
             eta = eta + theta[lay.stores][block.store] + theta[lay.weeks][block.week]
+            eta = eta + block.category @ theta[lay.category_effects]
         return _State(within, log_total, share / safe[:, None], log_inclusive, utility, linear, eta)
 
     def category_index(self, block: MarketBlock, c: int, theta: Floats) -> Floats:
@@ -298,8 +317,9 @@ class _Pieces:
         self.n_items = lay.n_items
         start = c * lay.n_items
         self.own_items = np.arange(start, start + lay.n_items)
-        # Common columns that move V or the segment level: b, logit rho, h.
-        self.common = np.arange(lay.covariates.start, lay.season.stop)
+        # Common columns that move V or the segment level: b, logit rho, h, f.
+        self.common = np.arange(lay.covariates.start, lay.level.stop)
+        self.tail = np.arange(lay.category_ratio.start, lay.category_effects.stop)
         self.effective = self._effective_covariates()
         self.segment_counts = block.counts @ owner._membership
         self.category = block.counts.sum(axis=1)
@@ -330,6 +350,8 @@ class _Pieces:
         for g in range(g_count):
             level[:, g, k + g] += state.log_total[:, g]
             level[:, g, k + g_count + g * m_count : k + g_count + (g + 1) * m_count] = self.block.season
+        if lay.n_level:
+            level[:, :, level.shape[2] - lay.n_level :] = self.block.level
         # Chain rule: rho = logistic(r).
         slope = np.ones(self.common.size)
         slope[k : k + g_count] = self.rho * (1.0 - self.rho)
@@ -361,8 +383,9 @@ class _Pieces:
         return within, segment
 
     def _category_columns(self) -> Floats:
-        """d eta / d logit lambda_c, (T,).  In the unscaled form lambda_c is fixed at 1."""
-        return self.state.log_inclusive * self.lambda_c * (1.0 - self.lambda_c)
+        """d eta / d (logit lambda_c, e), (T, 1 + E).  In the unscaled form lambda_c is fixed at 1."""
+        by_ratio = self.state.log_inclusive * self.lambda_c * (1.0 - self.lambda_c)
+        return np.concatenate([by_ratio[:, None], self.block.category], axis=1)
 
     def gradient(self) -> Floats:
         """Gradient over the whole parameter vector."""
@@ -376,7 +399,7 @@ class _Pieces:
         common[:n_effective] += np.einsum("tj,tjk->k", within, self.effective) * self.slope[:n_effective]
         result[self.common] = common
         if lay.category != CATEGORY_NONE:
-            result[lay.category_ratio] = self.volume_score @ self._category_columns()
+            result[self.tail] = self.volume_score @ self._category_columns()
             result[lay.stores] = np.bincount(self.block.store, self.volume_score, lay.n_stores)
             result[lay.weeks] = np.bincount(self.block.week, self.volume_score, lay.n_weeks)
         return result
@@ -393,7 +416,7 @@ class _Pieces:
         result[:, self.common] = common
         if lay.category != CATEGORY_NONE:
             rows = np.arange(self.category.size)
-            result[:, lay.category_ratio] = (self.volume_score * self._category_columns())[:, None]
+            result[:, self.tail] = self.volume_score[:, None] * self._category_columns()
             result[rows, lay.stores.start + self.block.store] = self.volume_score
             result[rows, lay.weeks.start + self.block.week] = self.volume_score
         return result
@@ -459,7 +482,7 @@ class _Pieces:
             [
                 self.lambda_c * self.item_mean,
                 self.lambda_c * self.level_mean,
-                self._category_columns()[:, None],
+                self._category_columns(),
                 stores,
                 weeks,
             ],

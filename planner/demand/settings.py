@@ -15,7 +15,8 @@ class Priors:
 
     item: an item's mean effect around its attribute prediction, first pass (afterwards the
     residual spread of that prediction).  deviation: an item's cluster effects around its mean.
-    covariate, season, store, week: effects around zero (stores around their mean).
+    covariate, season, level (discounts of a segment and of the category), store, week: effects
+    around zero (stores around their mean).
     ratio_common, ratio_spread: logit(lambda_g / lambda_c), pooled mean and spread across segments.
     category: logit(lambda_c) around zero.
     """
@@ -24,6 +25,7 @@ class Priors:
     deviation: float = 0.4
     covariate: float = 2.0
     season: float = 0.3
+    level: float = 1.0
     store: float = 2.0
     week: float = 0.5
     ratio_common: float = 1.5

@@ -25,12 +25,14 @@ def random_problem(category: str, unscaled: bool, seed: int = 3):
                 log_part,
                 rng.normal(size=(12, 6, 3)),
                 rng.normal(size=(12, 2)) if not unscaled else np.zeros((12, 0)),
+                rng.normal(size=(12, 3, 0 if unscaled else 2)),
+                rng.normal(size=(12, 0 if unscaled else 2)),
                 np.arange(12) // 4 + 3 * c,
                 np.arange(12) % 4,
                 rng.integers(150, 200, 12).astype(float),
             )
         )
-    layout = Layout(2, 6, 3, 3, 0 if unscaled else 2, 6, 4, category, unscaled)
+    layout = Layout(2, 6, 3, 3, 0 if unscaled else 2, 6, 4, category, *((0, 0) if unscaled else (2, 2)), unscaled)
     theta = rng.normal(0.0, 0.4, layout.size)
     if category == "none":
         theta[layout.category_ratio] = 40.0
