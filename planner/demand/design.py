@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from planner.catalogue.items import Catalogue
 from planner.demand.likelihood import CATEGORY_SHOPPERS, CATEGORY_VOLUME, Layout, MarketBlock
 from planner.demand.settings import NestedSettings
-from planner.sales.panel import BaseWeek, MarketPanel
+from planner.sales.panel import BaseWeek, MarketPanel, dense
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -38,13 +38,6 @@ class Design:
     rows: tuple[Ints, ...]
     season_now: Floats
     price_column: int
-
-
-def dense(panel: MarketPanel, values: Floats | Bools, n_stores: int, fill: float) -> Floats:
-    """(T, J) as (S, W, J); store-weeks without a market get ``fill``."""
-    cube = np.full((n_stores, len(panel.weeks), values.shape[1]), fill)
-    cube[panel.store_index, panel.week_index] = values
-    return cube
 
 
 def weeks_since_listing(panel: MarketPanel, n_stores: int) -> Ints:

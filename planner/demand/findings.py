@@ -7,10 +7,9 @@ from numpy.typing import NDArray
 from scipy.special import expit
 
 from planner.catalogue.items import Catalogue
-from planner.demand.design import dense
 from planner.demand.estimation import Estimation
 from planner.demand.fitted import Parameter, SegmentFinding
-from planner.sales.panel import MarketPanel
+from planner.sales.panel import MarketPanel, dense
 
 Floats = NDArray[np.float64]
 

@@ -8,8 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.catalogue.items import Catalogue
-from planner.demand.design import dense
-from planner.sales.panel import MarketPanel
+from planner.sales.panel import MarketPanel, dense
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]

@@ -86,3 +86,10 @@ class BaseWeek:
     space_limit: Floats
     space_known: bool
     notes: tuple[str, ...] = ()
+
+
+def dense(panel: MarketPanel, values: Floats | Bools, n_stores: int, fill: float) -> Floats:
+    """(T, J) as (S, W, J); store-weeks without a market get ``fill``."""
+    cube = np.full((n_stores, len(panel.weeks), values.shape[1]), fill)
+    cube[panel.store_index, panel.week_index] = values
+    return cube
