@@ -112,7 +112,8 @@ def judge_rows(request: LoadRequest, tables: dict[str, Matched]) -> JudgedRows:
 def place_on_axes(judged: JudgedRows) -> Placed:
     """The catalogue, and rows and ranges on its axes."""
     known, joining, rows, tables = judged.known, judged.joining, judged.rows, judged.tables
-    n_codes, used_stores = len(known.codes), np.unique(rows.store)
+    n_codes = len(known.codes)
+    used_stores = np.flatnonzero(np.bincount(rows.store, minlength=len(judged.stores)))
     store_axis = np.full(len(judged.stores), -1, dtype=np.int64)
     store_axis[used_stores] = np.arange(used_stores.size)
     start = int(rows.monday.min()) if rows.row.size else 0
@@ -167,10 +168,11 @@ def _shelf(placed: Placed, notes: list[str]) -> Shelf:
     if empty:
         notes.append(_("{n} item-store-weeks of listed items count as out of stock.").format(n=empty))
     rows = judged.rows
-    week = (rows.monday - axes.start) // 7
-    store, item = axes.store[rows.store], axes.item[rows.item]
-    judged.ledger.note("outside_range", rows.row[shelf.outside[store, week, item]])
-    judged.ledger.note("not_in_ranges", rows.row[shelf.unnamed[store, item]])
+    if shelf.outside.any() or shelf.unnamed.any():
+        week = (rows.monday - axes.start) // 7
+        store, item = axes.store[rows.store], axes.item[rows.item]
+        judged.ledger.note("outside_range", rows.row[shelf.outside[store, week, item]])
+        judged.ledger.note("not_in_ranges", rows.row[shelf.unnamed[store, item]])
     return shelf
 
 
@@ -223,9 +225,10 @@ def _last_checks(placed: Placed, base: BaseWeek) -> None:
         dear = np.flatnonzero((base.margin < 0.0).any(axis=0) & matters)
     ledger.note_other("cost_above_price", [(file, 0, catalogue.items[j].code) for j in dear])
     cut = np.flatnonzero(placed.cubes.part < 1.0)
-    rows = placed.judged.rows
-    week = (rows.monday - placed.axes.start) // 7
-    ledger.note("part_week", rows.row[np.isin(week, cut)])
+    if cut.size:
+        rows = placed.judged.rows
+        week = (rows.monday - placed.axes.start) // 7
+        ledger.note("part_week", rows.row[np.isin(week, cut)])
 
 
 def _said_about_history(placed: Placed, panel: MarketPanel) -> list[str]:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from datetime import date
 from itertools import pairwise
+from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,6 +22,7 @@ from planner.sales.side_tables import Ranges
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
 Ints = NDArray[np.int64]
+Kind = TypeVar("Kind", bound=np.generic)
 
 
 @dataclass(frozen=True)
@@ -188,17 +190,22 @@ def build_panel(
     price = np.where(np.isnan(prices.price), regular, prices.price)
     display = np.zeros(paid.shape) if cubes.display is None else np.nan_to_num(cubes.display)
     store, week = np.nonzero(cubes.open)
+
+    def markets(cube: NDArray[Kind]) -> NDArray[Kind]:
+        whole = store.size == cubes.open.size
+        return cube.reshape(-1, cube.shape[2]) if whole else cube[store, week]
+
     return MarketPanel(
         weeks=tuple(date.fromordinal(cubes.start + 7 * w) for w in range(cubes.open.shape[1])),
         store_index=store.astype(np.int64),
         week_index=week.astype(np.int64),
-        units=cubes.units[store, week],
-        listed=shelf.listed[store, week],
-        on_sale=on_sale_part(cubes, shelf)[store, week],
-        regular_price=regular[store, week],
-        price=price[store, week],
-        promotion=prices.promotion[store, week],
-        display=(display > 0.5).astype(np.float64)[store, week],
+        units=markets(cubes.units),
+        listed=markets(shelf.listed),
+        on_sale=markets(on_sale_part(cubes, shelf)),
+        regular_price=markets(regular),
+        price=markets(price),
+        promotion=markets(prices.promotion),
+        display=markets((display > 0.5).astype(np.float64)),
         shoppers=None if shoppers is None else shoppers[store, week],
     )
 

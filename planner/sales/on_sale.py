@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from planner.sales.runs import fill_forward, gaps, window_sum
+from planner.sales.runs import Gaps, fill_forward, gaps, window_sum
 
 Bools = NDArray[np.bool_]
 Floats = NDArray[np.float64]
@@ -46,36 +46,39 @@ class Shelf:
     unnamed: Bools
 
 
-def rate_beside_gaps(units: Floats, seen: Bools, counted: Bools, weeks: int) -> Floats:
-    """Units per week (S, W, J) in the ``weeks`` weeks with data before and after each gap.
+def rate_beside_gaps(units: Floats, seen: Bools, opened: Bools, weeks: int) -> Floats:
+    """Units per week (W, P) in the ``weeks`` weeks with data before and after each gap; P pairs.
 
     Local, so that the low season of a seasonal item is not taken for an empty shelf.
     """
-    opened = np.broadcast_to(counted[:, :, None], seen.shape)
     total, span = np.zeros(seen.shape), np.zeros(seen.shape)
-    for flip in (False, True):
-        part = [a[:, ::-1] if flip else a for a in (units, seen, opened)]
-        since_first = np.maximum.accumulate(part[1], axis=1) & part[2]
-        sums = [window_sum(a.astype(np.float64), weeks) for a in (part[0], since_first)]
-        at_gap = [fill_forward(np.where(part[1], a, np.nan)) for a in sums]
-        total += np.nan_to_num(at_gap[0][:, ::-1] if flip else at_gap[0])
-        span += np.nan_to_num(at_gap[1][:, ::-1] if flip else at_gap[1])
+    for way in (slice(None), slice(None, None, -1)):
+        here = seen[way]
+        since_first = np.maximum.accumulate(here, axis=0) & opened[way]
+        for sums, values in ((total, units[way]), (span, since_first.astype(np.float64))):
+            beside = fill_forward(np.where(here, window_sum(values, weeks), np.nan))
+            sums[way] += np.nan_to_num(beside)
     rate: Floats = total / np.maximum(span, 1.0)
     return rate
 
 
 def improbable_gaps(
-    units: Floats, seen: Bools, counted: Bools, settings: OnSaleSettings
+    units: Floats, seen: Bools, counted: Bools, found: Gaps, settings: OnSaleSettings
 ) -> tuple[Bools, Bools, Bools]:
     """Weeks (S, W, J) in improbable gaps: between rows, before the first row, after the last.
 
-    seen: weeks with a row; counted (S, W): weeks in which the store has data.
+    seen: weeks with a row; counted (S, W): weeks in which the store has data; found: the gaps of seen.
     """
-    length, before, after = gaps(seen, counted)
-    chance = np.exp(-rate_beside_gaps(units, seen, counted, settings.rate_weeks) * length)
-    unlikely = counted[:, :, None] & ~seen & (chance < settings.improbable)
-    inside = unlikely & before & after & (length > settings.gap_weeks)
-    return inside, unlikely & ~before & after, unlikely & before & ~after
+    inner = found.before & found.after
+    candidate = ~seen & counted[:, :, None] & (found.before | found.after)
+    candidate &= ~inner | (found.length > settings.gap_weeks)
+    store, item = np.nonzero(candidate.any(axis=1))
+    pairs = (store, slice(None), item)
+    rate = rate_beside_gaps(units[pairs].T, seen[pairs].T, counted[store].T, settings.rate_weeks)
+    chance = np.exp(-rate * found.length[pairs].T)
+    unlikely = np.zeros(seen.shape, dtype=bool)
+    unlikely[pairs] = (candidate[pairs].T & (chance < settings.improbable)).T
+    return unlikely & inner, unlikely & ~found.before, unlikely & ~found.after
 
 
 def writes_zero_rows(units: Floats, rows: Bools, counted: Bools) -> bool:
@@ -86,8 +89,8 @@ def writes_zero_rows(units: Floats, rows: Bools, counted: Bools) -> bool:
     zero_rows = int((rows & (units <= 0.0)).sum())
     if zero_rows < 20:
         return False
-    _length, before, after = gaps(rows, counted)
-    span = (counted[:, :, None] & (rows | (before & after))).sum(axis=1)
+    found = gaps(rows, counted)
+    span = (counted[:, :, None] & (rows | (found.before & found.after))).sum(axis=1)
     rate = units.sum(axis=1) / np.maximum(span, 1)
     expected = float((span * np.exp(-rate))[span > 0].sum())
     return zero_rows > 0.5 * expected
@@ -102,15 +105,15 @@ def infer_shelf(
     Listed runs from the first to the last row; a probable gap at either end belongs to it.  An
     improbable gap inside counts as out of stock, a very long one as off the range.
     """
-    length, before, after = gaps(seen, counted)
+    found = gaps(seen, counted)
     sold: Bools = np.any(seen, axis=1)[:, None, :]
     open_week = counted[:, :, None]
     if complete:
-        inside = open_week & ~seen & before & after
-        start, end = open_week & ~before, open_week & ~after
+        inside = open_week & ~seen & found.before & found.after
+        start, end = open_week & ~found.before, open_week & ~found.after
     else:
-        inside, start, end = improbable_gaps(units, seen, counted, settings)
-    away = start | end | (inside & (length >= settings.season_weeks))
+        inside, start, end = improbable_gaps(units, seen, counted, found, settings)
+    away = start | end | (inside & (found.length >= settings.season_weeks))
     listed = open_week & sold & ~away
     return listed, listed & ~inside
 
@@ -127,16 +130,15 @@ def ranged_shelf(
     own = named[:, None, :]
     outside = seen & ~in_range & own & open_week
     on_shelf = (in_range | outside) & open_week
-    length, before, after = gaps(on_shelf, counted)
-    planned = gaps(in_range & open_week, counted)[0]
-    bridge = ~on_shelf & own & open_week & before & after
-    bridge &= (length <= settings.bridge_weeks) & (planned > length)
-    guess_listed, guess_shelf = infer_shelf(units, seen, counted, False, settings)
+    listed = on_shelf
+    if outside.any():
+        shelf_gaps, planned = gaps(on_shelf, counted), gaps(in_range & open_week, counted)
+        bridge = ~on_shelf & own & open_week & shelf_gaps.before & shelf_gaps.after
+        bridge &= (shelf_gaps.length <= settings.bridge_weeks) & (planned.length > shelf_gaps.length)
+        listed = on_shelf | bridge
     unnamed = ~named & seen.any(axis=1)
-    pick = unnamed[:, None, :]
-    return Shelf(
-        np.where(pick, guess_listed, on_shelf | bridge),
-        np.where(pick, guess_shelf, on_shelf),
-        outside,
-        unnamed,
-    )
+    if unnamed.any():
+        pick = unnamed[:, None, :]
+        guess_listed, guess_shelf = infer_shelf(units, seen, counted, False, settings)
+        listed, on_shelf = np.where(pick, guess_listed, listed), np.where(pick, guess_shelf, on_shelf)
+    return Shelf(listed, on_shelf, outside, unnamed)

@@ -178,15 +178,18 @@ def _says_total(column: TextColumn) -> Bools:
 
 def _stray(monday: Ints, used: Bools) -> Bools:
     """Rows in weeks that a long gap separates from the bulk of the history."""
-    weeks, counts = np.unique(monday[used], return_counts=True)
-    if weeks.size < 2:
-        return np.zeros(monday.size, dtype=bool)
-    part = np.concatenate([[0], np.cumsum(np.diff(weeks) > 7 * STRAY_GAP_WEEKS)])
+    none = np.zeros(monday.size, dtype=bool)
+    if not used.any():
+        return none
+    start = int(monday[used].min())
+    counts = np.bincount(np.where(used, (monday - start) // 7, 0), used.astype(np.float64))
+    weeks = np.flatnonzero(counts)
+    part = np.concatenate([[0], np.cumsum(np.diff(weeks) > STRAY_GAP_WEEKS)])
     if part[-1] == 0:
-        return np.zeros(monday.size, dtype=bool)
-    rows = np.bincount(part, counts)
+        return none
+    rows = np.bincount(part, counts[weeks])
     kept = weeks[(part == int(np.argmax(rows))) | (rows[part] > 0.01 * rows.sum())]
-    return ~np.isin(monday, kept)
+    return used & ~np.isin((monday - start) // 7, kept)
 
 
 def _duplicates(read: ReadSales, ledger: Ledger, item: Ints, store: Ints) -> None:

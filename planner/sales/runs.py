@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -10,43 +12,41 @@ Ints = NDArray[np.int64]
 Floats = NDArray[np.float64]
 
 
-def weeks_back(marked: Bools, counted: Bools) -> Ints:
-    """Counted weeks since the last marked one (S, W, J): 0 in a marked week, -1 before the first.
+@dataclass(frozen=True)
+class Gaps:
+    """The gap that each week (S, W, J) lies in.
 
-    counted (S, W): weeks that count (the store has data).
+    length: counted weeks, 0 in a marked week.  before, after: there is a marked week on that side.
     """
-    passed = np.cumsum(counted, axis=1, dtype=np.int64)[:, :, None]
-    last = np.maximum.accumulate(np.where(marked, passed, -1), axis=1)
-    result: Ints = np.where(last >= 0, passed - last, -1)
-    return result
+
+    length: NDArray[np.int32]
+    before: Bools
+    after: Bools
 
 
-def gaps(marked: Bools, counted: Bools) -> tuple[Ints, Bools, Bools]:
-    """(length, has mark before, has mark after), each (S, W, J), of the gap a week lies in; 0 when marked.
+def gaps(marked: Bools, counted: Bools) -> Gaps:
+    """Gaps between marked weeks; counted (S, W): weeks that count (the store has data).
 
-    Lengths are in counted weeks.
+    A gap at either end reaches to the store's first or last counted week.
     """
-    back = weeks_back(marked, counted)
-    ahead = weeks_back(marked[:, ::-1], counted[:, ::-1])[:, ::-1]
-    opened = counted[:, :, None].astype(np.int64)
-    total = np.cumsum(opened, axis=1)
-    first, last = back < 0, ahead < 0
-    # A gap at either end reaches to the store's first or last week with data.
-    before = np.where(first, total, back)
-    after = np.where(last, total[:, -1:, :] - total + opened, ahead)
-    length = np.where(marked, 0, before + after - opened)
-    return length, ~first, ~last
+    passed = np.cumsum(counted, axis=1, dtype=np.int32)[:, :, None]
+    total = passed[:, -1:]
+    last = np.maximum.accumulate(np.where(marked, passed, np.int32(0)), axis=1)
+    ahead = np.where(marked, passed, total + 1)[:, ::-1]
+    coming = np.minimum.accumulate(ahead, axis=1)[:, ::-1]
+    length = np.where(marked, np.int32(0), coming - last - 1)
+    return Gaps(length, last > 0, coming <= total)
 
 
 def window_sum(values: Floats, weeks: int) -> Floats:
-    """Sum over the week itself and the ``weeks - 1`` before it, along axis 1."""
-    running = np.cumsum(values, axis=1)
+    """Sum over the week itself and the ``weeks - 1`` before it, along axis 0."""
+    running = np.cumsum(values, axis=0)
     result = running.copy()
-    result[:, weeks:] -= running[:, :-weeks]
+    result[weeks:] -= running[:-weeks]
     return result
 
 
-def fill_forward(values: Floats, axis: int = 1) -> Floats:
+def fill_forward(values: Floats, axis: int = 0) -> Floats:
     """Unknown (NaN) values take the last known one along ``axis``."""
     moved = np.moveaxis(values, axis, 0)
     place = np.arange(moved.shape[0]).reshape(-1, *[1] * (moved.ndim - 1))

@@ -38,7 +38,7 @@ def read_text_file(path: Path, name: str) -> RawTable:
         )
     delimiter = _delimiter(data)
     headers = _headers(data, delimiter, path)
-    table = _fast(data, delimiter, headers) if _is_plain(data) else None
+    table = _fast(data, delimiter, headers)
     if table is not None:
         columns = {header: text_column(table.column(k)) for k, header in enumerate(headers)}
         rows = np.arange(2, 2 + table.num_rows, dtype=np.int64) + skipped
@@ -67,11 +67,13 @@ def _bytes(path: Path) -> bytes:
 
 
 def _utf8(data: bytes, path: Path) -> bytes:
-    """The same text in UTF-8 without a byte order mark."""
+    """The same text in UTF-8 without a byte order mark; what is not UTF-8 is Windows-1252."""
     for mark, encoding in _BOMS:
         if data.startswith(mark):
             rest = data[len(mark) :]
-            return rest if encoding == "utf-8" else rest.decode(encoding, "replace").encode()
+            if encoding != "utf-8":
+                return rest.decode(encoding, "replace").encode()
+            return rest if _is_utf8(rest) else rest.decode("utf-8", "replace").encode()
     head = data[:4000]
     if b"\x00" in head:
         odd, even = head[1::2].count(0), head[0::2].count(0)
@@ -83,14 +85,18 @@ def _utf8(data: bytes, path: Path) -> bytes:
             place=path.name,
             remedy=_("Give a CSV, TSV, XLSX or Parquet file under its own ending."),
         )
+    return data if _is_utf8(data) else data.decode("cp1252", "replace").encode()
+
+
+def _is_utf8(data: bytes) -> bool:
     decoder = codecs.getincrementaldecoder("utf-8")()
     try:
         for start in range(0, len(data), _PIECE):
             decoder.decode(data[start : start + _PIECE])
         decoder.decode(b"", final=True)
     except UnicodeDecodeError:
-        return data.decode("cp1252", "replace").encode()
-    return data
+        return False
+    return True
 
 
 def _without_leading_blank_lines(data: bytes) -> tuple[bytes, int]:
@@ -141,18 +147,21 @@ def _headers(data: bytes, delimiter: str, path: Path) -> list[str]:
 
 def _is_plain(data: bytes) -> bool:
     """No blank lines inside and no lone carriage returns: row numbers follow from the order."""
+    if data.find(b"\r") < 0:
+        marks: tuple[bytes, ...] = (b"\n\n",)
+    else:
+        marks = (b"\n\n", b"\n\r\n", b"\r\r")
     end = len(data)
     while end and data[end - 1] in b"\r\n":
         end -= 1
-    return all(data.find(mark, 0, end) < 0 for mark in (b"\n\n", b"\n\r\n", b"\r\r"))
+    return all(data.find(mark, 0, end) < 0 for mark in marks)
 
 
 def _fast(data: bytes, delimiter: str, headers: list[str]) -> pa.Table | None:
-    """Cells by arrow; None when some row has another number of cells."""
+    """Cells by arrow; None when rows are not one line each of equally many cells."""
     names = [str(k) for k in range(len(headers))]
     kind = pa.dictionary(pa.int32(), pa.string())
-    quoted = b'"' in data
-    if quoted and _quotes_hold_newlines(data):
+    if not _is_plain(data) or (b'"' in data and _quotes_hold_newlines(data)):
         return None
     try:
         table = arrow_csv.read_csv(
@@ -160,7 +169,7 @@ def _fast(data: bytes, delimiter: str, headers: list[str]) -> pa.Table | None:
             read_options=arrow_csv.ReadOptions(column_names=names, skip_rows=1, block_size=1 << 22),
             parse_options=arrow_csv.ParseOptions(delimiter=delimiter, newlines_in_values=False),
             convert_options=arrow_csv.ConvertOptions(
-                column_types=dict.fromkeys(names, kind), strings_can_be_null=False
+                column_types=dict.fromkeys(names, kind), strings_can_be_null=False, check_utf8=False
             ),
         )
     except pa.ArrowInvalid:
