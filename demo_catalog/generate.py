@@ -61,7 +61,7 @@ def build(settings: DemoSettings) -> Demo:
     rng = [np.random.Generator(np.random.PCG64(seed)) for seed in seeds]
     items = all_items()
     money = draw_money(items, settings, rng[0])
-    stores = draw_stores(rng[1])
+    stores = draw_stores(settings, rng[1])
     people = draw_households(items, money, stores.cluster, stores.size, settings, rng[2])
     history = play(items, stores, money, people, settings, rng[3])
     codes = tuple(item.code for item in items)
@@ -151,9 +151,8 @@ def main() -> None:
     choices = parser.parse_args()
     demo = build(DemoSettings(seed=choices.seed))
     write(demo, choices.folder)
-    print(
-        f"{len(demo.sheets['sales'].rows)} sales rows, {len(demo.items)} items, {len(demo.stores.code)} stores"
-    )
+    counts = ", ".join(f"{len(sheet.rows)} {name}" for name, sheet in demo.sheets.items())
+    print(f"rows written: {counts}")
 
 
 if __name__ == "__main__":

@@ -11,7 +11,7 @@ from demo_catalog.generator.lists import CLUSTERS, SEGMENTS, ItemFacts
 from demo_catalog.generator.market import TrueMarket
 from demo_catalog.generator.prices import ItemMoney
 from demo_catalog.generator.settings import DemoSettings
-from demo_catalog.generator.shelves import Move, Stores, first_ranges, review, single_moves
+from demo_catalog.generator.shelves import Move, Stores, first_ranges, refit, review, single_moves
 from demo_catalog.generator.tastes import MOODS, Households
 
 Floats = NDArray[np.float64]
@@ -131,6 +131,9 @@ def play(
                 moves += review(
                     number, items, stores, money.space_cm, money.keep, state.present, rate, settings, rng
                 )
+        for s in np.flatnonzero(stores.refit_week == week):
+            rate = recent_rate(units[:week], listed[:week], stores.cluster)
+            moves += refit(int(s), stores, money.space_cm, money.keep, state.present, rate, week)
         _take_moves(state, moves, week, stores, money)
         listed[week] = state.present
         depth[week] = np.where(state.present, money.depth[week], 0.0)
@@ -180,10 +183,8 @@ def _take_moves(state: _Week, moves: list[Move], week: int, stores: Stores, mone
         row = state.present[move.store]
         if move.listed == row[move.item] or (not move.listed and money.keep[move.item]):
             continue
-        if (
-            move.listed
-            and money.space_cm[row].sum() + money.space_cm[move.item] > stores.space_cm[move.store]
-        ):
+        filled = money.space_cm[row].sum() + money.space_cm[move.item]
+        if move.listed and filled > stores.space_in(week)[move.store]:
             continue
         row[move.item] = move.listed
         state.since[move.store, move.item] = week

@@ -59,9 +59,8 @@ class TrueMarket:
         first = found.argmax(axis=1)
         rows = np.arange(first.size)
         buys = found[rows, first]
-        bought = np.bincount(
-            cell[rows, first][buys], weights=self.needs[buys], minlength=n_stores * (n_items + 1)
-        )
+        taken = cell[rows, first][buys]
+        bought = np.bincount(taken, weights=self.needs[buys], minlength=shelf.size).astype(np.float64)
         return bought.reshape(n_stores, n_items + 1)[:, :n_items]
 
     def margin(self, present: Bools) -> float:

@@ -19,6 +19,7 @@ class DemoSettings:
     review_weeks: first week of the two range reviews.
     cluster_delay, size_delay: weeks later by cluster (first review) and by store size (second review).
     stock_out: chance that an item starts to run out in a store in a week.
+    refits: stores whose shelf grew or shrank by one bay at some time.
     ordinary_weeks: the last weeks whose mean season makes up the ordinary week of the truth.
     """
 
@@ -33,7 +34,8 @@ class DemoSettings:
     review_weeks: tuple[int, int] = (25, 50)
     cluster_delay: tuple[int, int, int] = (0, 3, 6)
     size_delay: tuple[int, int, int] = (5, 2, 0)
-    stock_out: float = 0.018
+    stock_out: float = 0.045
+    refits: int = 12
     ordinary_weeks: int = 13
 
     def monday(self, week: int) -> date:

@@ -21,13 +21,22 @@ BAY_CM = 125.0
 
 @dataclass(frozen=True)
 class Stores:
-    """S stores.  code, town (S); cluster, size (S,): positions; space_cm (S,); visitors (S,) per week."""
+    """S stores.  code, town (S); cluster, size (S,): positions; space_cm (S,): today's shelf.
+
+    first_space_cm (S,): shelf before a refit; refit_week (S,): when it changed, -1: never.
+    """
 
     code: tuple[str, ...]
     town: tuple[str, ...]
     cluster: Ints
     size: Ints
     space_cm: Floats
+    first_space_cm: Floats
+    refit_week: Ints
+
+    def space_in(self, week: int) -> Floats:
+        """Shelf of every store in a week, (S,)."""
+        return np.where(week < self.refit_week, self.first_space_cm, self.space_cm)
 
 
 @dataclass(frozen=True)
@@ -41,8 +50,8 @@ class Move:
     cleared: bool = False
 
 
-def draw_stores(rng: np.random.Generator) -> Stores:
-    """Twelve stores a cluster: five small, four medium, three large."""
+def draw_stores(settings: DemoSettings, rng: np.random.Generator) -> Stores:
+    """Twelve stores a cluster: five small, four medium, three large; some refitted by one bay."""
     count = len(TOWNS)
     cluster = rng.permutation(np.repeat(np.arange(len(CLUSTERS)), count // len(CLUSTERS)))
     size = np.empty(count, dtype=np.int64)
@@ -50,12 +59,20 @@ def draw_stores(rng: np.random.Generator) -> Stores:
         size[cluster == c] = rng.permutation(np.repeat(np.arange(len(SIZES)), (5, 4, 3)))
     numbers = np.sort(rng.choice(np.arange(3, 160), size=count, replace=False))
     extra = (rng.random(count) < 0.25) * 0.5
+    space = (np.array(_BAYS)[size] + extra) * BAY_CM
+    refit = np.full(count, -1)
+    bays = np.zeros(count)
+    chosen = rng.choice(count, size=settings.refits, replace=False)
+    refit[chosen] = rng.integers(8, settings.weeks - 10, chosen.size)
+    bays[chosen] = rng.choice(np.array([-1.0, 1.0]), chosen.size)
     return Stores(
         code=tuple(f"{number:03d}" for number in numbers),
         town=TOWNS,
         cluster=cluster,
         size=size,
-        space_cm=(np.array(_BAYS)[size] + extra) * BAY_CM,
+        space_cm=space,
+        first_space_cm=space - bays * BAY_CM,
+        refit_week=refit,
     )
 
 
@@ -78,10 +95,25 @@ def first_ranges(
             cell = _filled(score, segment, space, 0.97 * _BAYS[z] * BAY_CM)
             for s in np.flatnonzero((stores.cluster == c) & (stores.size == z)):
                 present[s] = cell & ~(rng.random(len(items)) < 0.02)
-                for j in rng.permutation(np.flatnonzero(open_to & ~cell))[:2]:
-                    if space[present[s]].sum() + space[j] <= stores.space_cm[s]:
-                        present[s, j] = True
+                whim = rng.permutation(np.flatnonzero(open_to & ~cell))[:2]
+                _fill_shelf(present[s], whim, space, stores.first_space_cm[s])
+                _clear_shelf(present[s], score, space, stores.first_space_cm[s])
+                missing = np.argsort(-np.where(open_to & ~present[s], score, -np.inf))[:8]
+                _fill_shelf(present[s], missing, space, stores.first_space_cm[s] - 0.4 * BAY_CM)
     return present
+
+
+def _fill_shelf(row: Bools, candidates: Ints, space: Floats, room: float) -> None:
+    """Takes candidates into ``row`` (J,) in their order while they fit."""
+    for j in candidates:
+        if not row[j] and space[row].sum() + space[j] <= room:
+            row[j] = True
+
+
+def _clear_shelf(row: Bools, score: Floats, space: Floats, room: float) -> None:
+    """Takes the lowest scores out of ``row`` (J,) until the rest fits."""
+    while space[row].sum() > room:
+        row[np.argmin(np.where(row, score, np.inf))] = False
 
 
 def _filled(score: Floats, segment: Ints, space: Floats, room: float) -> Bools:
@@ -98,11 +130,15 @@ def _filled(score: Floats, segment: Ints, space: Floats, room: float) -> Bools:
 
 @dataclass(frozen=True)
 class _Desk:
-    """What lies on the table at a review.  rate (C, J): units per store and week on the shelf lately."""
+    """What lies on the table at a review.
+
+    space (J,), room (S,): cm.  rate (C, J): units per store and week on the shelf lately.
+    """
 
     items: tuple[ItemFacts, ...]
     stores: Stores
     space: Floats
+    room: Floats
     keep: Bools
     rate: Floats
     rng: np.random.Generator
@@ -120,7 +156,8 @@ def review(
     rng: np.random.Generator,
 ) -> list[Move]:
     """The moves of review 1 or 2, from the present ranges (S, J) and recent rates of sale (C, J)."""
-    desk = _Desk(items, stores, space, keep, rate, rng)
+    first = settings.review_weeks[number - 1]
+    desk = _Desk(items, stores, space, stores.space_in(first), keep, rate, rng)
     wanted = present.copy()
     launched = _launch(desk, number, wanted)
     dropped_by_supplier = _drop_supplier(desk, wanted, launched)
@@ -133,7 +170,7 @@ def review(
     late = rng.random(len(stores.code)) < 0.15
     moves = []
     for s, j in zip(*np.nonzero(wanted != present), strict=True):
-        week = settings.review_weeks[number - 1] + delay[of_store[s]] + int(late[s])
+        week = first + delay[of_store[s]] + int(late[s])
         cleared = bool(present[s, j] and not dropped_by_supplier[j])
         moves.append(Move(int(week), int(s), int(j), bool(wanted[s, j]), cleared))
     return moves
@@ -216,17 +253,26 @@ def _reshuffle(desk: _Desk, wanted: Bools, touched: Bools) -> None:
 
 
 def _fit(desk: _Desk, wanted: Bools, touched: Bools) -> None:
-    """Too full: the slowest untouched items go; half a bay empty: the best missing item comes."""
+    """Too full: the slowest untouched items go; half a bay empty: the best missing items come."""
     for s in range(wanted.shape[0]):
         rate = np.nan_to_num(desk.rate[desk.stores.cluster[s]], nan=-1.0)
-        while desk.space[wanted[s]].sum() > desk.stores.space_cm[s]:
-            able = wanted[s] & ~desk.keep & ~touched
-            wanted[s, np.argmin(np.where(able, rate, np.inf))] = False
-        for _ in range(2):
-            room = desk.stores.space_cm[s] - desk.space[wanted[s]].sum()
-            able = ~wanted[s] & ~touched & (rate > 0.0) & (desk.space <= room)
-            if room > 0.4 * BAY_CM and able.any():
-                wanted[s, np.argmax(np.where(able, rate, -np.inf))] = True
+        held = np.where(desk.keep | touched, np.inf, rate)
+        _clear_shelf(wanted[s], held, desk.space, desk.room[s])
+        able = np.flatnonzero(~wanted[s] & ~touched & (rate > 0.0))
+        best = able[np.argsort(-rate[able])][:3]
+        _fill_shelf(wanted[s], best, desk.space, desk.room[s] - 0.3 * BAY_CM)
+
+
+def refit(
+    store: int, stores: Stores, space: Floats, keep: Bools, present: Bools, rate: Floats, week: int
+) -> list[Move]:
+    """The moves of a store whose shelf changes by a bay this week.  present (S, J), rate (C, J)."""
+    row = present[store].copy()
+    known = np.nan_to_num(rate[stores.cluster[store]], nan=-1.0)
+    _clear_shelf(row, np.where(keep, np.inf, known), space, stores.space_cm[store])
+    able = np.flatnonzero(~row & (known > 0.0))
+    _fill_shelf(row, able[np.argsort(-known[able])], space, stores.space_cm[store])
+    return [Move(week, store, int(j), bool(row[j])) for j in np.flatnonzero(row != present[store])]
 
 
 def single_moves(

@@ -6,7 +6,8 @@ empty on some day; a listed item without a row was on the shelf and did not sell
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from datetime import timedelta
 
 import numpy as np
@@ -36,7 +37,7 @@ class Sheet:
     """One file: header and rows, every cell as it is written."""
 
     columns: Row
-    rows: list[Row]
+    rows: Sequence[Row]
 
     def text(self) -> str:
         """As comma-separated text with a final line break."""
@@ -145,14 +146,8 @@ def items_sheet(
             continue
         rows.append((*_item_cells(item, j, money, cost[j]), "Y" if money.keep[j] else ""))
         if j == succession.item:
-            old = ItemFacts(
-                **{
-                    **item.__dict__,
-                    "code": succession.old_code,
-                    "bags": succession.old_bags,
-                    "grams": item.grams / item.bags * succession.old_bags,
-                }
-            )
+            grams = item.grams / item.bags * succession.old_bags
+            old = replace(item, code=succession.old_code, bags=succession.old_bags, grams=grams)
             rows.append((*_item_cells(old, j, money, money.cost[0, j]), ""))
     return Sheet((*_ITEM_COLUMNS, "keep"), sorted(rows))
 
@@ -225,7 +220,7 @@ def ranges_sheet(
             edges = np.diff(np.r_[False, history.listed[:, s, j], False].astype(np.int8))
             starts, ends = np.flatnonzero(edges == 1), np.flatnonzero(edges == -1) - 1
             for start, end in zip(starts, ends, strict=True):
-                cuts = [start]
+                cuts = [int(start)]
                 if j == succession.item and start < succession.week[s] <= end:
                     cuts.append(int(succession.week[s]))
                 for k, cut in enumerate(cuts):
@@ -277,7 +272,7 @@ def sales_sheet(
     for s, w, j in cells.tolist():
         full = int(regular[w, stores.cluster[s], j])
         cut = history.depth[w, s, j]
-        price = int(round(full * (1.0 - cut)))
+        price = round(full * (1.0 - cut))
         sold = int(history.units[w, s, j])
         code = succession.code(items, w, s, j)
         rows.append(

@@ -11,6 +11,7 @@ and trying something), each with an order of liking of its own.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -151,8 +152,8 @@ def _one_store(
     size: int,
     settings: DemoSettings,
     rng: np.random.Generator,
-) -> tuple[NDArray, ...]:
-    n = int(round(settings.households[size] * rng.uniform(0.88, 1.12)))
+) -> tuple[NDArray[Any], ...]:
+    n = round(settings.households[size] * rng.uniform(0.88, 1.12))
     mix = rng.dirichlet(_MIX[cluster] * 90.0)
     lasting = _liking(marks, money, mix, n, rng)
     price_weight = np.minimum(0.5 + rng.exponential(0.8, n), 4.0)

@@ -1,0 +1,1 @@
+"""Tests of the invented chain and of the truth behind it."""
