@@ -1,0 +1,137 @@
+"""Does the jobs.  The heavy parts are imported here, when first needed, so that the window opens at once."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from planner.base.errors import CallError, LimitsError
+from planner.base.progress import Progress
+from planner.base.text import _
+from planner.plan.plans import NamedPlan, PlanRung, SolverOutcome
+from planner.review.jobs import ExportJob, FitJob, LoadJob, RecommendJob
+
+if TYPE_CHECKING:
+    from planner.demand.fitted import FittedModel
+    from planner.evidence.history import History
+    from planner.planfile.lock import PlanLock
+    from planner.planfile.store import PlanContents
+    from planner.sales.report import LoadedData
+    from planner.transfer.delistings import DelistingTransfers
+
+
+def warm_up() -> None:
+    """Import what jobs need; called once in a new child process."""
+    import planner.demand.nested
+    import planner.export.workbook
+    import planner.optimise.solve
+    import planner.planfile.store
+    import planner.sales.load  # noqa: F401
+
+
+def run_load(job: LoadJob, progress: Progress) -> LoadedData:
+    """Read the files of the request."""
+    from planner.sales.load import load
+
+    return load(job.request, progress)
+
+
+def run_fit(job: FitJob, progress: Progress) -> FittedModel:
+    """Fit the share model."""
+    from planner.demand.nested import fit_nested
+    from planner.demand.settings import NestedSettings
+
+    settings = NestedSettings(model=job.model, seed=job.seed)
+    return fit_nested(job.loaded.panel, job.loaded.catalogue, job.loaded.base, settings, progress)
+
+
+def run_recommend(job: RecommendJob, progress: Progress) -> NamedPlan:
+    """Find the best assortment; LimitsError when none meets the limits."""
+    from planner.optimise.problem import SolverSettings, Status
+    from planner.optimise.solve import best_assortment
+    from planner.review.problem import pose_problem
+
+    posed = pose_problem(job.loaded, job.fitted, job.limits)
+    settings = SolverSettings(seconds=job.seconds, gap=job.gap, seed=job.seed)
+    found = best_assortment(posed.problem, settings, progress)
+    if found.status is Status.IMPOSSIBLE or found.states is None:
+        raise LimitsError(
+            _("No assortment meets the limits. These clash: {limits}.").format(
+                limits="; ".join(found.clashing)
+            ),
+            remedy=_("Loosen one of them and run again."),
+        )
+    outcome = SolverOutcome(
+        found.status.value, found.value, found.bound, found.gap, found.seconds, found.today_value
+    )
+    return NamedPlan(
+        name=job.name,
+        states=found.states,
+        created=datetime.now(UTC).isoformat(timespec="seconds"),
+        limits=replace(job.limits, goal=posed.goal),
+        outcome=outcome,
+        rungs=tuple(PlanRung(r.changes, r.value, r.bound, r.states) for r in found.rungs),
+        notes=" ".join(posed.notes),
+    )
+
+
+def run_export(job: ExportJob, progress: Progress) -> Path:
+    """Write the workbook, the stores' list or the report."""
+    from planner.export.lists import write_stores_list
+    from planner.export.report import write_report
+    from planner.export.workbook import write_workbook
+
+    progress.report(_("Writing {name}").format(name=job.path.name))
+    if job.kind == "workbook":
+        write_workbook(job.path, job.loaded, job.fitted, job.plan, job.with_costs)
+    elif job.kind == "stores list":
+        write_stores_list(job.path, job.loaded, job.plan, job.with_costs)
+    elif job.kind == "report":
+        write_report(job.path, job.loaded, job.fitted, job.plan, job.with_costs)
+    else:
+        raise CallError(_("Unknown kind of export '{kind}'.").format(kind=job.kind))
+    return job.path
+
+
+def delistings_of(loaded: LoadedData, fitted: FittedModel) -> DelistingTransfers:
+    """Every single delisting on the fitted model."""
+    from planner.transfer.delistings import delistings
+
+    return delistings(fitted, loaded.base)
+
+
+def history_of(loaded: LoadedData) -> History:
+    """What varied in the history."""
+    from planner.evidence.history import history
+
+    return history(loaded.panel, loaded.catalogue)
+
+
+def read_plan_file(path: Path) -> PlanContents:
+    """Everything in a plan file."""
+    from planner.planfile.store import load
+
+    return load(path)
+
+
+def write_plan_file(path: Path, contents: dict[str, object]) -> None:
+    """Save; ``contents`` are the fields of planfile's PlanContents."""
+    from planner.planfile.store import PlanContents, save
+
+    save(path, PlanContents(**contents))  # type: ignore[arg-type]
+
+
+def lock_plan_file(path: Path) -> PlanLock:
+    """Hold the plan file for this program copy; the returned lock has ``release``."""
+    from planner.planfile.lock import PlanLock
+
+    return PlanLock(path)
+
+
+def request_from_folder(folder: Path) -> LoadJob:
+    """A load job for a folder that holds sales.*, items.* and more."""
+    from planner.sales.load import request_from_folder as request
+
+    return LoadJob(request(folder))
