@@ -61,6 +61,7 @@ def draw_money(items: tuple[ItemFacts, ...], settings: DemoSettings, rng: np.ran
     segment = np.array([item.segment for item in items])
     organic = np.array([item.organic for item in items])
     quality = rng.normal(0.0, 0.35, len(items)) + 0.2 * rng.laplace(0.0, 1.0, len(items))
+    quality += 0.8 * np.log(level)
     place = {key_of(item): j for j, item in enumerate(items)}
     for j, item in enumerate(items):
         if item.like:
@@ -70,7 +71,7 @@ def draw_money(items: tuple[ItemFacts, ...], settings: DemoSettings, rng: np.ran
         * level
         * (bags / 20.0) ** 0.72
         * np.where(organic, 1.14, 1.0)
-        * np.exp(0.16 * quality + rng.normal(0.0, 0.07, len(items)))
+        * np.exp(0.18 * quality + rng.normal(0.0, 0.07, len(items)))
     )
     vat = np.where(segment == CHAI, 0.20, 0.10)
     rate = np.where(own, rng.uniform(0.36, 0.46, len(items)), rng.uniform(0.24, 0.36, len(items)))
