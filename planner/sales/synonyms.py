@@ -30,7 +30,7 @@ _DATE: Tiers = (
 _WEEK: Tiers = (
     "week_commencing week_start week_starting week_beginning week_start_date week_of wc wk_commencing "
     "wk_start week_from",
-    "week week_no week_number week_id week_code wk wk_no iso_week year_week yearweek yw fiscal_week "
+    "week week_no week_number week_id week_code wk wk_no iso_week year_week yw fiscal_week "
     "fin_week "
     "trading_week calendar_week kalenderwoche kw woche",
     "week_ending week_end week_end_date we wk_ending period",
@@ -76,8 +76,8 @@ _ITEM_COLUMNS: dict[str, Tiers] = {
     ),
     "segment": (
         "segment segment_name segment_desc item_segment product_segment need_state",
-        "subcategory sub_category subcat sub_cat subcategory_name subsegment sub_segment",
-        "product_group item_group group family product_family subgroup sub_group class subclass sub_class",
+        "subcategory subcat subcategory_name subsegment",
+        "product_group item_group group family product_family subgroup class subclass",
     ),
     "category": _CATEGORY,
     "brand": ("brand brand_name brand_desc brand_owner_name marke", "manufacturer_brand range_name"),
@@ -127,7 +127,7 @@ _ITEM_COLUMNS: dict[str, Tiers] = {
 }
 
 _ON_SHELF: dict[str, Tiers] = {
-    "days_on_sale": ("days_on_sale days_on_shelf days_available days_in_stock days_instock",),
+    "days_on_sale": ("days_on_sale days_on_shelf days_available days_in_stock",),
     "days_out_of_stock": (
         "days_out_of_stock days_oos oos_days out_of_stock_days stockout_days days_stockout "
         "days_without_stock "
@@ -195,7 +195,7 @@ COLUMNS: dict[str, dict[str, Tiers]] = {
         "cluster": _CLUSTER,
         "space_cm": _SPACE,
         "region": ("region area district region_name area_name province county",),
-        "size": ("size store_size size_band sqm sales_area floor_space sales_area_sqm sq_m size_class",),
+        "size": ("size store_size size_band sqm sales_area floor_space sales_area_sqm size_class",),
     },
     "shoppers": {
         "store": _STORE,
@@ -212,7 +212,7 @@ COLUMNS: dict[str, dict[str, Tiers]] = {
         "item": _ITEM,
         "cost": _COST,
         "from": (
-            "from_week from from_date valid_from week_from start_week start_date date_from effective_from "
+            "from_week from from_date valid_from start_week start_date date_from effective_from "
             "effective_date effective_week valid_from_week since",
             *_WEEK,
             *_DATE,
