@@ -43,7 +43,7 @@ def run_fit(job: FitJob, progress: Progress) -> FittedModel:
     from planner.demand.nested import fit_nested
     from planner.demand.settings import NestedSettings
 
-    settings = NestedSettings(model=job.model, seed=job.seed)
+    settings = NestedSettings(model=job.model, seed=job.seed, draws=job.draws)
     return fit_nested(job.loaded.panel, job.loaded.catalogue, job.loaded.base, settings, progress)
 
 
@@ -135,3 +135,11 @@ def request_from_folder(folder: Path) -> LoadJob:
     from planner.sales.load import request_from_folder as request
 
     return LoadJob(request(folder))
+
+
+def write_set_aside(path: Path, loaded: LoadedData) -> None:
+    """The rows that were not used, with file, row number and reason, as CSV."""
+    from planner.base.target_file import replacing
+
+    with replacing(path, (".csv",)) as part:
+        loaded.set_aside.to_csv(part, index=False, lineterminator="\n")

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -24,11 +25,12 @@ class LoadJob:
 
 @dataclass(frozen=True)
 class FitJob:
-    """Fit a share model.  model: "nested" or "plain"."""
+    """Fit a share model.  model: "nested" or "plain"; draws: parameter draws behind the intervals."""
 
     loaded: LoadedData
     model: str = "nested"
     seed: int = 1
+    draws: int = 200
 
 
 @dataclass(frozen=True)
@@ -54,3 +56,22 @@ class ExportJob:
     fitted: FittedModel
     plan: NamedPlan
     with_costs: bool = True
+
+
+def load_request(
+    files: Mapping[str, Path | None],
+    matches: tuple[tuple[str, str, str], ...] = (),
+    category: str = "",
+    segment_by: tuple[str, ...] = (),
+) -> LoadRequest:
+    """A request for chosen files, by table name; sales and items are needed."""
+    sales, items = files["sales"], files["items"]
+    assert sales is not None
+    assert items is not None
+    request = LoadRequest(sales, items, matches=matches, category=category, segment_by=segment_by)
+    return replace(request, **{name: path for name, path in files.items() if path is not None})
+
+
+def request_with_segments(request: LoadRequest, segment_by: tuple[str, ...]) -> LoadRequest:
+    """The same files with other segments."""
+    return replace(request, segment_by=segment_by)
