@@ -148,7 +148,8 @@ def say_plan(review: RangeReview, plan: NamedPlan) -> None:
         )
     say(
         _(
-            "Best found {value}, no plan can exceed {bound} under this model and these limits ({status}, gap {gap})."
+            "Best found {value}; under this model and these limits no plan exceeds {bound} "
+            "({status}, gap {gap})."
         ).format(
             value=number(outcome.value, 1),
             bound=number(outcome.bound, 1),

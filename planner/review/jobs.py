@@ -68,8 +68,19 @@ def load_request(
     sales, items = files["sales"], files["items"]
     assert sales is not None
     assert items is not None
-    request = LoadRequest(sales, items, matches=matches, category=category, segment_by=segment_by)
-    return replace(request, **{name: path for name, path in files.items() if path is not None})
+    return LoadRequest(
+        sales,
+        items,
+        stores=files.get("stores"),
+        shoppers=files.get("shoppers"),
+        costs=files.get("costs"),
+        ranges=files.get("ranges"),
+        offers=files.get("offers"),
+        successors=files.get("successors"),
+        matches=matches,
+        category=category,
+        segment_by=segment_by,
+    )
 
 
 def request_with_segments(request: LoadRequest, segment_by: tuple[str, ...]) -> LoadRequest:
