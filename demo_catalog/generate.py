@@ -26,6 +26,7 @@ from demo_catalog.generator.market import TrueMarket
 from demo_catalog.generator.prices import ItemMoney, draw_money
 from demo_catalog.generator.settings import DemoSettings
 from demo_catalog.generator.shelves import Stores, draw_stores
+from demo_catalog.generator.succession import draw_succession
 from demo_catalog.generator.tables import Sheet
 from demo_catalog.generator.tastes import draw_households
 from demo_catalog.generator.truth import Truth, work_out
@@ -63,12 +64,12 @@ def build(settings: DemoSettings) -> Demo:
     money = draw_money(items, settings, rng[0])
     stores = draw_stores(settings, rng[1])
     people = draw_households(items, money, stores.cluster, stores.size, settings, rng[2])
-    history = play(items, stores, money, people, settings, rng[3])
+    succession = draw_succession(items, len(stores.code), settings, rng[4])
+    history = play(items, stores, money, people, succession, settings, rng[3])
     codes = tuple(item.code for item in items)
     lately = slice(settings.weeks - settings.ordinary_weeks, settings.weeks)
     market = ordinary_market(codes, items, stores, money, people, history.listed[-1], lately, settings)
     offered_to = _offered_to(items, rng[4])
-    succession = tables.draw_succession(items, len(stores.code), settings, rng[4])
     sales, careless = tables.sales_sheet(items, stores, money, history, succession, settings, rng[5])
     sheets = {
         "sales": sales,

@@ -12,6 +12,7 @@ from demo_catalog.generator.market import TrueMarket
 from demo_catalog.generator.prices import ItemMoney
 from demo_catalog.generator.settings import DemoSettings
 from demo_catalog.generator.shelves import Move, Stores, first_ranges, refit, review, single_moves
+from demo_catalog.generator.succession import Succession
 from demo_catalog.generator.tastes import MOODS, Households
 
 Floats = NDArray[np.float64]
@@ -90,6 +91,21 @@ def ordinary_market(
     )
 
 
+@dataclass(frozen=True)
+class _Offered:
+    """One week as shoppers find it.  price, depth, days_out, spare (S, J); liking (J,); level (S,).
+
+    spare: chance that a pack lasts for one more need; level: how many have a need.
+    """
+
+    price: Floats
+    depth: Floats
+    days_out: NDArray[np.int8]
+    spare: Floats
+    liking: Floats
+    level: Floats
+
+
 @dataclass
 class _Week:
     """The state that runs along."""
@@ -105,6 +121,7 @@ def play(
     stores: Stores,
     money: ItemMoney,
     people: Households,
+    succession: Succession,
     settings: DemoSettings,
     rng: np.random.Generator,
 ) -> History:
@@ -143,9 +160,9 @@ def play(
         visitors[week] = np.rint(usual * mood * rng.lognormal(0.0, 0.02, n_stores))
         liking = season_liking[week][np.array([item.segment for item in items])] + money.drift[week]
         price = np.round(money.regular[week][stores.cluster] * (1.0 - depth[week]), 2)
-        units[week] = _shop(
-            state, week, people, price, depth[week], days_out[week], liking, season[week] * mood, rng
-        )
+        spare = succession.spare(items, week)
+        found = _Offered(price, depth[week], days_out[week], spare, liking, season[week] * mood)
+        units[week] = _shop(state, week, people, found, rng)
     return History(listed, units, days_out, depth, visitors, season, season_liking)
 
 
@@ -216,19 +233,9 @@ def _run_out(
     return today.astype(np.int8)
 
 
-def _shop(
-    state: _Week,
-    week: int,
-    people: Households,
-    price: Floats,
-    depth: Floats,
-    days_out: NDArray[np.int8],
-    liking: Floats,
-    level: Floats,
-    rng: np.random.Generator,
-) -> Ints:
+def _shop(state: _Week, week: int, people: Households, found: _Offered, rng: np.random.Generator) -> Ints:
     """Units sold this week (S, J): every household with a need takes the best it finds, or goes."""
-    in_need = np.flatnonzero(rng.random(people.store.size) < people.rate * level[people.store])
+    in_need = np.flatnonzero(rng.random(people.store.size) < people.rate * found.level[people.store])
     served = state.pantry[in_need] > 0
     state.pantry[in_need[served]] -= 1
     who = in_need[~served]
@@ -237,17 +244,21 @@ def _shop(
     row = who * MOODS + (draw > split[:, 0]) + (draw > split[:, 1])
     item, store = people.item[row], people.store[who][:, None]
     there = state.present[store, item] & (item >= 0)
-    there &= rng.integers(0, 7, who.size)[:, None] >= days_out[store, item]
+    there &= rng.integers(0, 7, who.size)[:, None] >= found.days_out[store, item]
     there &= week - state.since[store, item] >= people.aware[row]
-    cut = depth[store, item]
-    worth = people.liking[row] + liking[item] + 0.25 * (cut > 0)
-    worth -= people.price_weight[row][:, None] * np.log(price)[store, item]
+    cut = found.depth[store, item]
+    worth = people.liking[row] + found.liking[item] + 0.25 * (cut > 0)
+    worth -= people.price_weight[row][:, None] * np.log(found.price)[store, item]
     worth[~there] = -np.inf
     best = worth.argmax(axis=1)
     spot = np.arange(who.size)
     takes = worth[spot, best] >= people.least[row]
     double = takes & people.stores_up[who] & (cut[spot, best] >= 0.2)
     state.pantry[who[double]] += 1
-    cell = people.store[who] * price.shape[1] + item[spot, best]
-    sold = np.bincount(cell[takes], weights=(1 + double)[takes], minlength=price.size)
-    return np.rint(sold).astype(np.int64).reshape(price.shape)
+    # A bigger old pack lasts longer: some of its buyers skip their next need.
+    longer = takes & (rng.random(who.size) < found.spare[people.store[who], item[spot, best]])
+    state.pantry[who[longer]] += 1
+    shape = found.price.shape
+    cell = people.store[who] * shape[1] + item[spot, best]
+    sold = np.bincount(cell[takes], weights=(1 + double)[takes], minlength=shape[0] * shape[1])
+    return np.rint(sold).astype(np.int64).reshape(shape)

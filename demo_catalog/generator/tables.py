@@ -21,13 +21,12 @@ from demo_catalog.generator.lists import (
     FLAVOURS,
     SEGMENTS,
     SIZES,
-    SUCCESSION,
     ItemFacts,
-    key_of,
 )
 from demo_catalog.generator.prices import ItemMoney
 from demo_catalog.generator.settings import DemoSettings
 from demo_catalog.generator.shelves import Stores
+from demo_catalog.generator.succession import Succession
 
 Row = tuple[str, ...]
 
@@ -48,32 +47,6 @@ class Sheet:
 
 def _quoted(cell: str) -> str:
     return f'"{cell}"' if "," in cell else cell
-
-
-@dataclass(frozen=True)
-class Succession:
-    """An old code's item, and the week (S,) in which each store changes to the new one."""
-
-    item: int
-    old_code: str
-    old_bags: int
-    week: NDArray[np.int64]
-
-    def code(self, items: tuple[ItemFacts, ...], week: int, store: int, item: int) -> str:
-        """The code an item was sold under."""
-        return self.old_code if item == self.item and week < self.week[store] else items[item].code
-
-
-def draw_succession(
-    items: tuple[ItemFacts, ...], n_stores: int, settings: DemoSettings, rng: np.random.Generator
-) -> Succession:
-    """When the resized pack replaced the old one, store by store within three weeks."""
-    key, old_bags = SUCCESSION
-    item = next(j for j, fact in enumerate(items) if key_of(fact) == key)
-    first = settings.weeks // 2 + 2
-    return Succession(
-        item, f"{int(items[item].code) - 16:07d}", old_bags, first + rng.integers(0, 3, n_stores)
-    )
 
 
 def gtin(code: str, brand: int) -> str:
@@ -236,6 +209,7 @@ def ranges_sheet(
 def successors_sheet(items: tuple[ItemFacts, ...], succession: Succession, settings: DemoSettings) -> Sheet:
     """The one resized pack."""
     new = items[succession.item]
+    # How many old units one new unit holds.
     factor = f"{new.bags / succession.old_bags:g}"
     date = settings.monday(int(succession.week.min())).isoformat()
     return Sheet(
