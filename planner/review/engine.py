@@ -31,11 +31,24 @@ def warm_up() -> None:
     import planner.sales.load  # noqa: F401
 
 
+def warm_window() -> None:
+    """Import what the window's own process needs to take results and keep plan files."""
+    import planner.evidence.history
+    import planner.planfile.store
+    import planner.sales.report
+    import planner.transfer.delistings  # noqa: F401
+
+
 def run_load(job: LoadJob, progress: Progress) -> LoadedData:
     """Read the files of the request."""
     from planner.sales.load import load
 
     return load(job.request, progress)
+
+
+def run_load_folder(folder: Path, progress: Progress) -> LoadedData:
+    """Read a folder that holds sales.*, items.* and more."""
+    return run_load(request_from_folder(folder), progress)
 
 
 def run_fit(job: FitJob, progress: Progress) -> FittedModel:
