@@ -44,7 +44,10 @@ class CodeIndex:
         found = [self.find(text) for text in column.texts()]
         position = np.array([p for p, _exact in found] + [-1], dtype=np.int64)
         other = np.array([p >= 0 and not exact for p, exact in found] + [False])
-        return position[column.codes], other[column.codes]
+        known, otherwise = position[column.codes], other[column.codes]
+        if column.padded is not None:
+            otherwise = otherwise | (column.padded & (known >= 0))
+        return known, otherwise
 
 
 def code_index(codes: list[str]) -> CodeIndex:

@@ -24,10 +24,12 @@ class TextColumn:
 
     codes (n,): position of the cell's text in ``values``; -1 for a blank cell.
     values: the different texts.
+    padded (n,): cells that had blanks around their text in the file; None when none had.
     """
 
     codes: Codes
     values: pa.StringArray
+    padded: NDArray[np.bool_] | None = None
 
     def take(self, rows: Ints) -> TextColumn:
         """The same column for some rows."""
@@ -75,14 +77,16 @@ def _tidied(codes: Codes, values: pa.StringArray) -> TextColumn:
     again = trimmed.dictionary_encode()
     texts = again.dictionary
     empty = pc.index(texts, "").as_py()
+    changed = pc.not_equal(trimmed, values).fill_null(False).to_numpy(zero_copy_only=False)
+    padded = np.append(changed, False)[codes] if changed.any() else None
     if len(texts) == len(values) and empty < 0:
-        return TextColumn(codes, trimmed)
+        return TextColumn(codes, trimmed, padded)
     place = again.indices.to_numpy(zero_copy_only=False).astype(np.int32)
     if empty >= 0:
         place = np.where(place == empty, -1, place - (place > empty)).astype(np.int32)
         texts = pa.concat_arrays([texts.slice(0, empty), texts.slice(empty + 1)])
     moved = np.append(place, np.int32(-1))[codes]
-    return TextColumn(moved, texts)
+    return TextColumn(moved, texts, padded)
 
 
 def column_of(cells: list[str]) -> TextColumn:

@@ -62,10 +62,26 @@ def by_cluster(cells: Floats, cluster: Ints, n_clusters: int) -> Floats:
     return np.stack([upper_median(cells[cluster == c]) for c in range(n_clusters)])
 
 
-def _with_chain(levels: Floats) -> Floats:
-    """Clusters without a price that week take the chain's."""
-    chain = upper_median(levels)
-    return np.where(np.isnan(levels), chain[None], levels)
+def with_chain(levels: Floats) -> Floats:
+    """Clusters (C, W, J) without a price that week take the other clusters', each times the usual
+    ratio between the two clusters' prices of the item.
+    """
+    filled = levels.copy()
+    for c in range(levels.shape[0]):
+        missing = np.isnan(levels[c])
+        if not missing.any():
+            continue
+        others = [k for k in range(levels.shape[0]) if k != c]
+        guesses = [levels[k] * _usual(levels[c] / levels[k]) for k in others]
+        if guesses:
+            filled[c] = np.where(missing, upper_median(np.stack(guesses)), levels[c])
+    return filled
+
+
+def _usual(ratio: Floats) -> Floats:
+    """The median over weeks (J,) of a ratio (W, J), 1 where it is never known."""
+    middle = upper_median(ratio)
+    return np.where(np.isnan(middle), 1.0, middle)
 
 
 def _store_factor(cells: Floats, level: Floats, cluster: Ints, same: float) -> Floats:
@@ -103,16 +119,18 @@ def fill_prices(
         flagged = np.where(np.isnan(promotion), np.nan_to_num(share)[cluster] > 0.5, promotion > 0.5)
     source = _regular_source(known, regular, flagged)
     level = by_cluster(source, cluster, n_clusters)
+    level = with_chain(level)
     if regular is None and flagged is None:
-        level = running_level(_with_chain(level), settings.window, axis=1)
-    level = _with_chain(carry(level))
+        level = running_level(level, settings.window, axis=1)
+    week_level = with_chain(by_cluster(known, cluster, n_clusters))
     # An item that was only ever sold on promotion has no other price.
-    level = np.where(np.isnan(level), _with_chain(carry(by_cluster(known, cluster, n_clusters))), level)
-    factor = _store_factor(known, by_cluster(known, cluster, n_clusters), cluster, settings.same)
+    level = carry(level)
+    level = np.where(np.isnan(level), carry(week_level), level)
+    factor = _store_factor(known, week_level, cluster, settings.same)
     full = level[cluster] * factor[:, None, :]
     if regular is not None:
         full = np.where(np.isnan(regular), full, regular)
-    week_price = _with_chain(by_cluster(known, cluster, n_clusters))[cluster] * factor[:, None, :]
+    week_price = week_level[cluster] * factor[:, None, :]
     price = np.where(np.isnan(known), np.where(np.isnan(week_price), full, week_price), known)
     if flagged is None:
         with np.errstate(invalid="ignore"):

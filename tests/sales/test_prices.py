@@ -150,3 +150,13 @@ def test_net_sales_become_consumer_prices(tmp_path: Path) -> None:
     np.testing.assert_allclose(loaded.base.margin, [[1.5, 2.0, 1.0, 3.0]])
     assert loaded.report.money_read == 3 * 10 * 115
     assert any("net of VAT" in note for note in loaded.report.notes)
+
+
+def test_cluster_that_dropped_an_item_follows_the_others_prices() -> None:
+    cluster = np.array([0, 1])
+    paid = np.full((2, 30, 1), 2.0)
+    paid[1] = 2.2
+    paid[0, 15:] = 3.0
+    paid[1, 10:] = NAN
+    cells = fill_prices(paid, np.full(paid.shape, NAN), None, None, cluster, PriceSettings())
+    np.testing.assert_allclose(cells.regular[1, :, 0], [2.2] * 15 + [3.3] * 15)

@@ -161,9 +161,10 @@ def test_codes_keep_or_find_their_zeros(tmp_path: Path) -> None:
     rows = sales_rows(4)
     for row in rows[:12]:
         row["sku"] = str(row["sku"]).lstrip("0")
+    rows[20]["sku"] = f" {rows[20]['sku']}  "
     loaded = load_rows(tmp_path, rows)
     assert [item.code for item in loaded.catalogue.items] == ["0010", "0011", "0012", "0013"]
-    assert check(loaded, "similar_code")[0] == 12
+    assert check(loaded, "similar_code")[0] == 13
     assert (loaded.panel.units == 10.0).all()
 
 
