@@ -116,8 +116,8 @@ def place_on_axes(judged: JudgedRows) -> Placed:
     used_stores = np.flatnonzero(np.bincount(rows.store, minlength=len(judged.stores)))
     store_axis = np.full(len(judged.stores), -1, dtype=np.int64)
     store_axis[used_stores] = np.arange(used_stores.size)
-    start = int(rows.monday.min()) if rows.row.size else 0
-    n_weeks = (int(rows.monday.max()) - start) // 7 + 1 if rows.row.size else 0
+    start = int(rows.week.min()) if rows.row.size else 0
+    n_weeks = int(rows.week.max()) - start + 1 if rows.row.size else 0
     codes = Axes(
         items=known.index,
         item=joining.target,
@@ -169,7 +169,7 @@ def _shelf(placed: Placed, notes: list[str]) -> Shelf:
         notes.append(_("{n} item-store-weeks of listed items count as out of stock.").format(n=empty))
     rows = judged.rows
     if shelf.outside.any() or shelf.unnamed.any():
-        week = (rows.monday - axes.start) // 7
+        week = rows.week - axes.start
         store, item = axes.store[rows.store], axes.item[rows.item]
         judged.ledger.note("outside_range", rows.row[shelf.outside[store, week, item]])
         judged.ledger.note("not_in_ranges", rows.row[shelf.unnamed[store, item]])
@@ -227,7 +227,7 @@ def _last_checks(placed: Placed, base: BaseWeek) -> None:
     cut = np.flatnonzero(placed.cubes.part < 1.0)
     if cut.size:
         rows = placed.judged.rows
-        week = (rows.monday - placed.axes.start) // 7
+        week = rows.week - placed.axes.start
         ledger.note("part_week", rows.row[np.isin(week, cut)])
 
 

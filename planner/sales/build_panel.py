@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from datetime import date
 from itertools import pairwise
 from typing import TypeVar
 
@@ -16,8 +15,9 @@ from planner.sales.on_sale import OnSaleSettings, Shelf, infer_shelf, ranged_she
 from planner.sales.panel import MarketPanel
 from planner.sales.prices import PriceSettings, fill_prices
 from planner.sales.report import ListingEvent
-from planner.sales.rows import SalesRows
+from planner.sales.rows import Positions, SalesRows
 from planner.sales.side_tables import Ranges
+from planner.sales.weeks import monday_of
 
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
@@ -29,7 +29,7 @@ Kind = TypeVar("Kind", bound=np.generic)
 class Cubes:
     """Sums over the used rows per store, week and item; all (S, W, J) unless said.
 
-    start: ordinal of the first Monday.  rows: number of rows.  open (S, W): the store has data.
+    start: the first week (see weeks.Days).  rows: number of rows.  open (S, W): the store has data.
     part (W,): part of the week that the file covers.  Optional columns are None, their cells NaN
     where the cell has no row with a value.
     """
@@ -50,13 +50,13 @@ class Cubes:
     days_out_of_stock: Floats | None
 
 
-def build_cubes(rows: SalesRows, store: Ints, item: Ints, n_stores: int, n_items: int) -> Cubes:
+def build_cubes(rows: SalesRows, store: Positions, item: Positions, n_stores: int, n_items: int) -> Cubes:
     """Add the rows up; store, item (n,) are positions on the catalogue's axes."""
-    start = int(rows.monday.min())
-    week = (rows.monday - start) // 7
+    start = int(rows.week.min())
+    week = rows.week - start
     n_weeks = int(week.max()) + 1
     shape = (n_stores, n_weeks, n_items)
-    cell = (store * n_weeks + week) * n_items + item
+    cell = (store.astype(np.int64) * n_weeks + week) * n_items + item
 
     def total(values: Floats | None) -> Floats:
         sums = np.bincount(cell, values, minlength=int(np.prod(shape)))
@@ -68,6 +68,8 @@ def build_cubes(rows: SalesRows, store: Ints, item: Ints, n_stores: int, n_items
     def known_total(values: Floats | None) -> tuple[Floats, Floats] | None:
         if values is None:
             return None
+        if not np.isnan(values.sum()):
+            return total(values), count
         known = ~np.isnan(values)
         return total(np.where(known, values, 0.0)), total(known.astype(np.float64))
 
@@ -95,13 +97,13 @@ def _positive(values: Floats | None) -> Floats | None:
     return None if values is None else np.where(values > 0.0, values, np.nan)
 
 
-def _covered(rows: SalesRows, week: Ints, n_weeks: int) -> Floats:
+def _covered(rows: SalesRows, week: Positions, n_weeks: int) -> Floats:
     """Part (W,) of each week with days in the file; only the first and the last can be cut."""
     part = np.ones(n_weeks)
     if rows.daily:
         for w in {0, n_weeks - 1}:
             days = np.unique(rows.day[week == w])
-            monday = int(rows.monday.min()) + 7 * w
+            monday = monday_of(int(rows.week.min()) + w).toordinal()
             # Days closed inside the week are the store's habit; days beyond the file's ends are missing.
             if w == 0 and days.size:
                 part[w] -= (int(days.min()) - monday) / 7.0
@@ -196,7 +198,7 @@ def build_panel(
         return cube.reshape(-1, cube.shape[2]) if whole else cube[store, week]
 
     return MarketPanel(
-        weeks=tuple(date.fromordinal(cubes.start + 7 * w) for w in range(cubes.open.shape[1])),
+        weeks=tuple(monday_of(cubes.start + w) for w in range(cubes.open.shape[1])),
         store_index=store.astype(np.int64),
         week_index=week.astype(np.int64),
         units=markets(cubes.units),

@@ -83,6 +83,8 @@ class Ledger:
 
     def set_aside(self, code: str, picked: Bools) -> None:
         """Take the picked rows that are still in use out of use."""
+        if not picked.any():
+            return
         picked = picked & (self.reason == 0)
         if picked.any():
             if code not in self.codes:

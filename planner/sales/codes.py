@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from planner.sales.columns import TextColumn
 
-Ints = NDArray[np.int64]
+Ints = NDArray[np.int32]
 Bools = NDArray[np.bool_]
 
 
@@ -42,9 +42,9 @@ class CodeIndex:
     def find_all(self, column: TextColumn) -> tuple[Ints, Bools]:
         """Position (n,) of every cell's code, -1 when blank or unknown; cells written otherwise (n,)."""
         found = [self.find(text) for text in column.texts()]
-        position = np.array([p for p, _exact in found] + [-1], dtype=np.int64)
-        other = np.array([p >= 0 and not exact for p, exact in found] + [False])
-        known, otherwise = position[column.codes], other[column.codes]
+        position = np.array([p for p, _exact in found] + [-1], dtype=np.int32)
+        known = position[column.codes]
+        otherwise = column.spread([p >= 0 and not exact for p, exact in found])
         if column.padded is not None:
             otherwise = otherwise | (column.padded & (known >= 0))
         return known, otherwise

@@ -35,6 +35,17 @@ class TextColumn:
         """The same column for some rows."""
         return TextColumn(self.codes[rows], self.values)
 
+    def spread(self, distinct: list[bool] | NDArray[np.bool_], blank: bool = False) -> NDArray[np.bool_]:
+        """A property (n,) of every cell from that of the different texts; ``blank``: of blank cells."""
+        if not (any(distinct) or (blank and self.has_blank())):
+            return np.zeros(self.codes.size, dtype=bool)
+        cells: NDArray[np.bool_] = np.append(np.asarray(distinct, dtype=bool), blank)[self.codes]
+        return cells
+
+    def has_blank(self) -> bool:
+        """Whether some cell is blank."""
+        return self.codes.size > 0 and int(self.codes.min()) < 0
+
     def texts(self) -> list[str]:
         """The different texts as Python strings."""
         found: list[str] = self.values.to_pylist()

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from datetime import date
-
 import numpy as np
 from numpy.typing import NDArray
 
@@ -12,7 +10,7 @@ from planner.sales.checks import Ledger
 from planner.sales.matching import Matched
 from planner.sales.money import decimal_marks, read_numbers
 from planner.sales.side_tables import Axes, note_unreadable
-from planner.sales.weeks import Calendar, read_days
+from planner.sales.weeks import Calendar, monday_of, read_days
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -29,24 +27,24 @@ def read_costs(table: Matched, axes: Axes, calendar: Calendar, ledger: Ledger) -
     mark = decimal_marks(table, ("cost",))["cost"]
     numbers = read_numbers(table.column("cost"), mark)
     note_unreadable(table, "cost", numbers.bad, ledger)
-    day = np.zeros(len(table.raw), dtype=np.int64)
+    week = np.zeros(len(table.raw), dtype=np.int32)
     use = (item >= 0) & (np.nan_to_num(numbers.values) > 0.0) & ~np.append(axes.replaced, False)[known]
     if table.has("from"):
         days = read_days(table, "from", table.column("from"), calendar)
         note_unreadable(table, "from", days.bad, ledger)
         use &= ~days.bad
-        day = np.where(days.blank, 0, days.monday)
-    last_monday = axes.start + 7 * (axes.n_weeks - 1)
-    later = use & (day > last_monday)
-    use &= day <= last_monday
+        week = np.where(days.blank, 0, days.week)
+    last = axes.start + axes.n_weeks - 1
+    later = use & (week > last)
+    use &= week <= last
     cost = np.full(axes.n_items, np.nan)
-    order = np.argsort(day[use], kind="stable")
+    order = np.argsort(week[use], kind="stable")
     cost[item[use][order]] = numbers.values[use][order]
     notes = []
     if later.any():
         notes.append(
             _("{n} costs are valid only after the last week of sales ({day}) and are not used.").format(
-                n=int(later.sum()), day=date.fromordinal(last_monday).isoformat()
+                n=int(later.sum()), day=monday_of(last).isoformat()
             )
         )
     return cost, notes

@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass
 from decimal import Decimal, InvalidOperation
+from typing import Any
 
 import numpy as np
 import pyarrow as pa
@@ -18,6 +19,7 @@ from planner.sales.matching import Matched
 
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
+Codes = NDArray[np.int32]
 
 BLANK_WORDS = frozenset(("null", "na", "n/a", "#n/a", "nan", "none", "nil", "-", "--", "?"))
 _PLAIN = r"^[+-]?([0-9]+\.?[0-9]*|\.[0-9]+)$"
@@ -33,34 +35,51 @@ _EXACT_IN_FLOAT = 2.0**50
 
 @dataclass(frozen=True)
 class Exact:
-    """Amounts as integers: amount = minor / 10**scale.  minor is int64, or Python integers."""
+    """Amounts as integers: amount of row k = minor[codes[k]] / 10**scale.
 
+    minor: the different amounts, int64 or Python integers, and a 0 at the end for blank cells.
+    """
+
+    codes: Codes
     minor: NDArray[np.generic]
     scale: int
 
     def total(self, picked: Bools | NDArray[np.int64] | None = None) -> Decimal:
         """Exact sum over the picked rows."""
-        part = self.minor if picked is None else self.minor[picked]
-        if part.size == 0:
-            return Decimal(0)
-        if part.dtype != object and int(np.abs(part).max()) * part.size >= 2**62:
-            part = part.astype(object)
-        return Decimal(int(part.sum())).scaleb(-self.scale)
+        codes = self.codes if picked is None else self.codes[picked]
+        # Counting each amount keeps the sum in integers whatever the number of rows.
+        counts = np.bincount(codes + 1, minlength=self.minor.size)
+        different = np.flatnonzero(counts)
+        amounts: Any = self.minor[different - 1]
+        if different.size and _may_overflow(amounts, int(counts.sum())):
+            amounts = amounts.astype(object)
+        return Decimal(int((amounts * counts[different]).sum())).scaleb(-self.scale)
+
+    def rows(self) -> NDArray[np.generic]:
+        """The amount of every row in minor units."""
+        return self.minor[self.codes]
 
     def filled(self, other: Exact, picked: Bools) -> Exact:
         """The picked rows from ``other``, all on one scale."""
         scale = max(self.scale, other.scale)
-        parts = [part.minor.astype(object) * 10 ** (scale - part.scale) for part in (self, other)]
-        return Exact(np.where(picked, parts[1], parts[0]), scale)
+        parts = [part.rows().astype(object) * 10 ** (scale - part.scale) for part in (self, other)]
+        return exact_rows(np.where(picked, parts[1], parts[0]), scale)
 
     def times(self, other: Exact) -> Exact:
         """Exact products row by row."""
-        a, b = self.minor, other.minor
-        if a.size and a.dtype != object and b.dtype != object:
-            bound = int(np.abs(a).max()) * int(np.abs(b).max())
-            if bound >= 2**62:
-                a = a.astype(object)
-        return Exact(a * b, self.scale + other.scale)  # type: ignore[operator]
+        a, b = self.rows(), other.rows()
+        if a.size and a.dtype != object and b.dtype != object and _may_overflow(a, int(np.abs(b).max())):
+            a = a.astype(object)
+        return exact_rows(a * b, self.scale + other.scale)  # type: ignore[operator]
+
+
+def exact_rows(minor: NDArray[np.generic], scale: int) -> Exact:
+    """Amounts row by row."""
+    return Exact(np.arange(minor.size, dtype=np.int32), np.append(minor, np.zeros(1, minor.dtype)), scale)
+
+
+def _may_overflow(amounts: NDArray[np.generic], times: int) -> bool:
+    return amounts.dtype != object and int(np.abs(amounts).max()) * times >= 2**62
 
 
 @dataclass(frozen=True)
@@ -76,13 +95,13 @@ class Numbers:
 def read_numbers(column: TextColumn, mark: str) -> Numbers:
     """All cells of a column as numbers, ``mark`` being the decimal mark."""
     values, minor, scale, state = _distinct(column.values, mark)
-    # One more place at the end answers for blank cells, whose code is -1.
-    values = np.append(values, np.nan)
     minor = np.append(minor, np.zeros(1, dtype=minor.dtype))
-    state = np.append(state, np.int8(1))
-    codes = column.codes
-    kind = state[codes]
-    return Numbers(values[codes], kind == 1, kind == 2, Exact(minor[codes], scale))
+    return Numbers(
+        np.append(values, np.nan)[column.codes],
+        column.spread(state == 1, blank=True),
+        column.spread(state == 2),
+        Exact(column.codes, minor, scale),
+    )
 
 
 def _distinct(texts: pa.StringArray, mark: str) -> tuple[Floats, NDArray[np.generic], int, NDArray[np.int8]]:
@@ -219,4 +238,4 @@ def read_flags(column: TextColumn) -> tuple[Floats, Bools]:
         positive = word in yes or (word not in no and (parse_number(word, ".") or 0) > 0)
         value.append(float(positive))
         bad.append(not positive and word not in no and parse_number(word, ".") is None)
-    return np.array([*value, 0.0])[column.codes], np.array([*bad, False])[column.codes]
+    return np.array([*value, 0.0])[column.codes], column.spread(bad)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass, fields, replace
+from typing import Any
 
 import numpy as np
 import pandas as pd
@@ -19,6 +20,7 @@ from planner.sales.weeks import Calendar, Days, date_column, read_days
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+Positions = NDArray[np.int64] | NDArray[np.int32]
 Bools = NDArray[np.bool_]
 
 NUMBER_COLUMNS = (
@@ -41,15 +43,15 @@ class SalesRows:
     """The used rows (n,): positions and numbers; optional columns are None when the file has none.
 
     store: position in the index of stores; item: position in the index of items, successors joined;
-    monday, day: ordinals; units: in units of the joined item; money: consumer money or net of VAT
+    week, day: see weeks.Days; units: in units of the joined item; money: consumer money or net of VAT
     (``net_money``).  row: position in the file's table.
     """
 
     row: Ints
-    store: Ints
-    item: Ints
-    monday: Ints
-    day: Ints
+    store: Positions
+    item: Positions
+    week: Positions
+    day: Positions
     units: Floats
     money: Floats
     net_money: bool
@@ -83,6 +85,7 @@ class ReadSales:
     days: Days
     units: Numbers
     money: Exact
+    money_values: Floats
     money_blank: Bools
     money_bad: Bools
     net_money: bool
@@ -99,16 +102,17 @@ def read_sales(table: Matched, calendar: Calendar) -> ReadSales:
     priced = next((name for name in ("price", "regular_price") if name in numbers), "")
     valued = next((name for name in ("revenue", "revenue_net") if name in numbers), "")
     if valued:
-        money = numbers[valued].exact
+        money, values = numbers[valued].exact, numbers[valued].values
         blank, bad = numbers[valued].blank, numbers[valued].bad
         if priced and (blank & ~units.blank).any():
             product = numbers[priced].exact.times(units.exact)
             usable = blank & ~(numbers[priced].blank | numbers[priced].bad | units.bad | units.blank)
             money, blank = money.filled(product, usable), blank & ~usable
+            values = np.where(usable, numbers[priced].values * units.values, values)
     else:
-        money = numbers[priced].exact.times(units.exact)
+        money, values = numbers[priced].exact.times(units.exact), numbers[priced].values * units.values
         blank, bad = numbers[priced].blank, numbers[priced].bad
-    return ReadSales(table, days, units, money, blank, bad, valued == "revenue_net", numbers)
+    return ReadSales(table, days, units, money, values, blank, bad, valued == "revenue_net", numbers)
 
 
 def judge(
@@ -125,34 +129,41 @@ def judge(
     other_category (n,): rows that belong to a category that is not reviewed.
     open_weeks: a store without rows in the last so many weeks is closed.
     """
-    table, n = read.table, len(read.table.raw)
+    table, days = read.table, read.days
     item_cells, store_cells = table.column("item"), table.column("store")
-    if table.raw.crooked.size == n:
+    if table.raw.crooked.size:
         ledger.set_aside("crooked_row", table.raw.crooked)
     ledger.set_aside("total_line", _total_lines(table))
     ledger.set_aside("other_category", other_category)
-    ledger.set_aside("blank_code", (item_cells.codes < 0) | (store_cells.codes < 0))
+    ledger.set_aside("blank_code", _blank(item_cells) | _blank(store_cells))
     item, item_other = items.find_all(item_cells)
     store, store_other = stores.find_all(store_cells)
     ledger.set_aside("unknown_item", item < 0)
     ledger.set_aside("unknown_store", store < 0)
-    ledger.set_aside("unreadable_week", read.days.bad | read.days.blank)
+    ledger.set_aside("unreadable_week", days.bad | days.blank)
     ledger.set_aside("unreadable_number", read.units.bad | read.money_bad)
-    nothing = read.units.blank | (read.money_blank & (np.nan_to_num(read.units.values) != 0.0))
-    ledger.set_aside("blank_number", nothing)
-    ledger.set_aside("stray_week", _stray(read.days.monday, ledger.used))
+    ledger.set_aside("blank_number", read.units.blank | (read.money_blank & (read.units.values != 0.0)))
+    ledger.set_aside("stray_week", _stray(days.week, ledger.used))
     _duplicates(read, ledger, item, store)
-    ledger.note("similar_code", np.flatnonzero(item_other & ledger.used))
-    ledger.note("similar_store_code", np.flatnonzero(store_other & ledger.used))
-    known = np.maximum(item, 0)
-    ledger.note("successor_row", np.flatnonzero((joining.target[known] != known) & ledger.used))
-    units = np.nan_to_num(read.units.values) * joining.factor[known]
-    item = np.where(item >= 0, joining.target[known], item)
-    money = np.asarray(read.money.minor, dtype=np.float64) / 10.0**read.money.scale
-    _prices(ledger, item, units, money)
-    _returns(ledger, item, store, read.days.monday, units)
-    ledger.set_aside("closed_store", _closed(read.days.monday, store, ledger.used, open_weeks))
-    return _used_rows(read, ledger.used, item, store, units, money, joining.factor[known])
+    for code, other in (("similar_code", item_other), ("similar_store_code", store_other)):
+        if other.any():
+            ledger.note(code, np.flatnonzero(other & ledger.used))
+    units = read.units.values
+    factor: Floats | None = None
+    if joining.notes:
+        known = np.maximum(item, 0)
+        factor = joining.factor[known]
+        ledger.note("successor_row", np.flatnonzero((joining.target[known] != known) & ledger.used))
+        units = units * factor
+        item = np.where(item >= 0, joining.target[known], item)
+    _prices(ledger, item, units, read.money_values)
+    _returns(ledger, item, store, days.week, units)
+    ledger.set_aside("closed_store", _closed(days.week, store, ledger.used, open_weeks))
+    return _used_rows(read, ledger.used, item, store, units, factor)
+
+
+def _blank(column: TextColumn) -> Bools:
+    return column.spread(np.zeros(len(column.values), dtype=bool), blank=True)
 
 
 def _total_lines(table: Matched) -> Bools:
@@ -162,7 +173,7 @@ def _total_lines(table: Matched) -> Bools:
     for name in ("item", "store", "date", "week"):
         if table.has(name):
             found |= _says_total(table.column(name))
-    blank = (table.column("item").codes < 0) | (table.column("store").codes < 0)
+    blank = _blank(table.column("item")) | _blank(table.column("store"))
     if blank.any():
         rows = np.flatnonzero(blank)
         for header in table.raw.columns:
@@ -171,28 +182,22 @@ def _total_lines(table: Matched) -> Bools:
 
 
 def _says_total(column: TextColumn) -> Bools:
-    says = [bool(_TOTAL.match(text)) for text in column.texts()]
-    result: Bools = np.array([*says, False])[column.codes]
-    return result
+    return column.spread([bool(_TOTAL.match(text)) for text in column.texts()])
 
 
-def _stray(monday: Ints, used: Bools) -> Bools:
+def _stray(week: Positions, used: Bools) -> Bools:
     """Rows in weeks that a long gap separates from the bulk of the history."""
-    none = np.zeros(monday.size, dtype=bool)
-    if not used.any():
-        return none
-    start = int(monday[used].min())
-    counts = np.bincount(np.where(used, (monday - start) // 7, 0), used.astype(np.float64))
+    counts = np.bincount(week[used])
     weeks = np.flatnonzero(counts)
     part = np.concatenate([[0], np.cumsum(np.diff(weeks) > STRAY_GAP_WEEKS)])
-    if part[-1] == 0:
-        return none
+    if part[-1] == 0 or weeks.size == 0:
+        return np.zeros(week.size, dtype=bool)
     rows = np.bincount(part, counts[weeks])
     kept = weeks[(part == int(np.argmax(rows))) | (rows[part] > 0.01 * rows.sum())]
-    return used & ~np.isin((monday - start) // 7, kept)
+    return used & ~np.isin(week, kept)
 
 
-def _duplicates(read: ReadSales, ledger: Ledger, item: Ints, store: Ints) -> None:
+def _duplicates(read: ReadSales, ledger: Ledger, item: Positions, store: Positions) -> None:
     """Exact repeats set aside, other rows of the same store, day and item reported."""
     rows = np.flatnonzero(ledger.used)
     day = read.days.day[rows]
@@ -200,7 +205,7 @@ def _duplicates(read: ReadSales, ledger: Ledger, item: Ints, store: Ints) -> Non
         return
     there = np.bincount(day - day.min()) > 0
     day = np.cumsum(there)[day - day.min()] - 1
-    key = (store[rows] * (int(item.max()) + 1) + item[rows]) * int(there.sum()) + day
+    key = (store[rows].astype(np.int64) * (int(item.max()) + 1) + item[rows]) * int(there.sum()) + day
     twice = _repeated(key)
     if not twice.any():
         return
@@ -222,7 +227,7 @@ def _duplicates(read: ReadSales, ledger: Ledger, item: Ints, store: Ints) -> Non
         ledger.note("conflicting_duplicate", left[sold][_repeated(left_keys[sold])])
 
 
-def _repeated(key: Ints) -> Bools:
+def _repeated(key: Positions) -> Bools:
     """Keys (n,) that stand in more than one row."""
     if int(key.max()) < max(4 * key.size, 1_000_000):
         twice: Bools = np.bincount(key)[key] > 1
@@ -231,7 +236,7 @@ def _repeated(key: Ints) -> Bools:
     return twice
 
 
-def _prices(ledger: Ledger, item: Ints, units: Floats, money: Floats) -> None:
+def _prices(ledger: Ledger, item: Positions, units: Floats, money: Floats) -> None:
     """Contradictions between units and money, and prices far from the item's own median."""
     ledger.set_aside("sign_mismatch", units * money < 0.0)
     ledger.set_aside("zero_price", (units != 0.0) & (money == 0.0))
@@ -251,18 +256,16 @@ def _prices(ledger: Ledger, item: Ints, units: Floats, money: Floats) -> None:
     ledger.set_aside("absurd_price", absurd)
 
 
-def _returns(ledger: Ledger, item: Ints, store: Ints, monday: Ints, units: Floats) -> None:
+def _returns(ledger: Ledger, item: Positions, store: Positions, week: Positions, units: Floats) -> None:
     """Negative units stay when the week's sales cover them, else they are set aside."""
     returned = ledger.used & (units < 0.0)
     if not returned.any():
         return
-    cell = pd.MultiIndex.from_arrays([store[returned], item[returned], monday[returned]])
+    cell = pd.MultiIndex.from_arrays([store[returned], item[returned], week[returned]])
     rows = np.flatnonzero(ledger.used)
-    wanted = np.isin(item[rows], np.unique(item[returned])) & np.isin(
-        monday[rows], np.unique(monday[returned])
-    )
+    wanted = np.isin(item[rows], np.unique(item[returned])) & np.isin(week[rows], np.unique(week[returned]))
     rows = rows[wanted]
-    net = pd.Series(units[rows]).groupby([store[rows], item[rows], monday[rows]]).sum()
+    net = pd.Series(units[rows]).groupby([store[rows], item[rows], week[rows]]).sum()
     below = net.reindex(cell).to_numpy() < -1e-9
     beyond = np.zeros(ledger.reason.size, dtype=bool)
     beyond[np.flatnonzero(returned)[below]] = True
@@ -270,46 +273,51 @@ def _returns(ledger: Ledger, item: Ints, store: Ints, monday: Ints, units: Float
     ledger.note("return_netted", np.flatnonzero(returned & ~beyond))
 
 
-def _closed(monday: Ints, store: Ints, used: Bools, weeks: int) -> Bools:
+def _closed(week: Positions, store: Positions, used: Bools, weeks: int) -> Bools:
     """Rows of stores whose last row lies before the last ``weeks`` weeks."""
-    closed = np.zeros(monday.size, dtype=bool)
+    closed = np.zeros(week.size, dtype=bool)
     if not used.any():
         return closed
     latest = np.zeros(int(store.max()) + 1, dtype=np.int64)
-    np.maximum.at(latest, store[used], monday[used])
-    gone = latest <= latest.max() - 7 * max(weeks, 1)
+    np.maximum.at(latest, store[used], week[used])
+    gone = latest <= latest.max() - max(weeks, 1)
     closed[used] = gone[store[used]]
     return closed
 
 
 def _used_rows(
-    read: ReadSales, used: Bools, item: Ints, store: Ints, units: Floats, money: Floats, factor: Floats
+    read: ReadSales, used: Bools, item: Positions, store: Positions, units: Floats, factor: Floats | None
 ) -> SalesRows:
     rows = np.flatnonzero(used)
+    whole = rows.size == used.size
     table = read.table
+
+    def pick(values: Any) -> Any:
+        return values if whole else values[rows]
 
     def number(name: str, per_unit: bool = False) -> Floats | None:
         if name not in read.numbers:
             return None
-        values = read.numbers[name].values[rows]
-        return values / factor[rows] if per_unit else values
+        values = pick(read.numbers[name].values)
+        return values / pick(factor) if per_unit and factor is not None else values
 
     def flag(name: str, text_is_yes: bool) -> Floats | None:
         if not table.has(name):
             return None
-        column = table.column(name).take(rows)
-        value, unclear = read_flags(column)
+        value, unclear = read_flags(table.column(name))
         # The name of a promotion in a promotion column means that there was one.
-        return np.maximum(value, unclear.astype(np.float64)) if text_is_yes else value
+        if text_is_yes and unclear.any():
+            value = np.maximum(value, unclear.astype(np.float64))
+        return pick(value)
 
     return SalesRows(
         row=rows,
-        store=store[rows],
-        item=item[rows],
-        monday=read.days.monday[rows],
-        day=read.days.day[rows],
-        units=units[rows],
-        money=money[rows],
+        store=pick(store),
+        item=pick(item),
+        week=pick(read.days.week),
+        day=pick(read.days.day),
+        units=pick(units),
+        money=pick(read.money_values),
         net_money=read.net_money,
         daily=read.days.daily,
         price=number("price", per_unit=True),

@@ -35,7 +35,7 @@ class Axes:
 
     item (n,), store (m,): axis position of every known code, -1 when left out.
     replaced (n,): the code was replaced by a successor, whose position it has.
-    start: ordinal of the first Monday.
+    start: the first week (see weeks.Days).
     """
 
     items: CodeIndex
@@ -81,7 +81,7 @@ def read_range_rows(table: Matched, axes: Axes, calendar: Calendar, ledger: Ledg
     for ours, target in (("first_week", first), ("last_week", last)):
         if table.has(ours):
             days = read_days(table, ours, table.column(ours), calendar)
-            target[:] = np.where(days.blank, target, (days.monday - axes.start) // 7)
+            target[:] = np.where(days.blank, target, days.week - axes.start)
             note_unreadable(table, ours, days.bad, ledger)
             usable &= ~days.bad
     usable &= first <= last
@@ -131,7 +131,7 @@ def read_shoppers(
     numbers = read_numbers(table.column("shoppers"), mark)
     note_unreadable(table, "shoppers", numbers.bad, ledger)
     store = _positions(axes.stores, axes.store, table, "store")
-    week = (days.monday - axes.start) // 7
+    week = days.week - axes.start
     use = (store >= 0) & (week >= 0) & (week < axes.n_weeks) & ~days.bad & ~days.blank
     use &= np.nan_to_num(numbers.values) > 0.0
     found = np.full((axes.n_stores, axes.n_weeks), np.nan)

@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from collections import Counter
 from dataclasses import dataclass
-from datetime import date, timedelta
+from datetime import date
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,7 +16,7 @@ from planner.sales.columns import TextColumn, column_of
 from planner.sales.matching import Matched, plain
 from planner.sales.money import BLANK_WORDS
 
-Ints = NDArray[np.int64]
+Ints = NDArray[np.int32]
 Bools = NDArray[np.bool_]
 
 FIRST_YEAR, LAST_YEAR = 1980, 2099
@@ -72,11 +72,12 @@ class Calendar:
 class Days:
     """One date or week column.
 
-    monday, day (n,): ordinals (datetime.date.toordinal); week codes count as their Monday; 0 where
-    blank or unreadable.  daily: the column holds single days of the week.
+    week (n,): weeks since the Monday 0001-01-01 (see ``monday_of``).  day (n,): ordinals
+    (datetime.date.toordinal); week codes count as their Monday; 0 where blank or unreadable.
+    daily: the column holds single days of the week.
     """
 
-    monday: Ints
+    week: Ints
     day: Ints
     blank: Bools
     bad: Bools
@@ -267,9 +268,9 @@ def read_days(table: Matched, ours: str, cells: TextColumn, calendar: Calendar) 
     short = _without_time(cells)
     texts = short.texts()
     read = [("blank", 0) if t.casefold() in BLANK_WORDS else _read(t, calendar) for t in texts]
-    day = np.array([ordinal or 0 for _kind, ordinal in read] + [0], dtype=np.int64)
-    blank = np.array([kind == "blank" for kind, _o in read] + [True])
-    bad = (day == 0) & ~blank
+    day = np.array([ordinal or 0 for _kind, ordinal in read] + [0], dtype=np.int32)
+    blank = [kind == "blank" for kind, _ordinal in read]
+    bad = (day[:-1] == 0) & ~np.array(blank, dtype=bool)
     used = np.array(sorted({d for d, (kind, _o) in zip(day, read, strict=False) if d and kind == "day"}))
     weekdays = Counter(((used - 1) % 7).tolist())
     daily = len(weekdays) > 1
@@ -279,13 +280,10 @@ def read_days(table: Matched, ours: str, cells: TextColumn, calendar: Calendar) 
         ends = "end" in header
         starts = any(word in header for word in ("start", "commenc", "begin"))
         shift = -3 if ends else 3 if starts else 0
-    moved = np.where(day > 0, day + shift, 0)
-    monday = np.where(day > 0, moved - (moved - 1) % 7, 0)
-    codes = short.codes
-    return Days(monday[codes], day[codes], blank[codes], bad[codes], daily)
+    week = np.where(day > 0, (day + shift - 1) // 7, 0).astype(np.int32)
+    return Days(week[short.codes], day[short.codes], short.spread(blank, True), short.spread(bad), daily)
 
 
-def iso_monday(ordinal: int) -> date:
-    """The Monday of the ISO 8601 week that holds a day."""
-    day = date.fromordinal(int(ordinal))
-    return day - timedelta(days=day.weekday())
+def monday_of(week: int) -> date:
+    """The Monday of a week counted from 0001-01-01."""
+    return date.fromordinal(7 * int(week) + 1)
