@@ -98,8 +98,13 @@ def _lock_rows(loaded: LoadedData, limits: Limits, states: States) -> list[_Row]
     cluster = np.array(catalogue.cluster_of_store(), dtype=np.int64)
     today = today_states(loaded.base.today, cluster, len(catalogue.clusters))
     titles = {"keep": _("Keep"), "never": _("Never list"), "as today": _("Leave as today")}
+    flags = tuple(
+        ItemLock(item.code, "keep", reason=_("keep flag of the items table"))
+        for item in catalogue.items
+        if item.keep
+    )
     rows = []
-    for lock in limits.locks:
+    for lock in (*limits.locks, *flags):
         where = lock.item if not lock.cluster else f"{lock.item}, {lock.cluster}"
         met = None
         if lock.item in index and (not lock.cluster or lock.cluster in catalogue.clusters):

@@ -1,0 +1,82 @@
+"""Saving and loading a plan file."""
+
+from __future__ import annotations
+
+import json
+from dataclasses import fields
+from pathlib import Path
+
+from planner import __version__
+from planner.base.target_file import check_target, replacing
+from planner.demand.fitted import FittedModel
+from planner.plan.limits import Limits
+from planner.plan.plans import NamedPlan
+from planner.planfile.contents import PlanContents
+from planner.planfile.damage import Damage, FileLimits
+from planner.planfile.database import check_identity, read_database, write_database
+from planner.planfile.records import Reader, Writer, conforms
+from planner.planfile.shapes import check_shapes, refuse_unfit
+from planner.sales.report import LoadedData
+
+__all__ = ["ENDING", "PlanContents", "load", "save"]
+
+ENDING = ".rangewright"
+
+# Checked as the records' own fields are.
+_PARTS: dict[str, object] = {
+    "loaded": LoadedData | None,
+    "fitted": FittedModel | None,
+    "limits": Limits,
+    "plans": tuple[NamedPlan, ...],
+}
+
+
+def save(path: Path, contents: PlanContents) -> None:
+    """Replace what the plan file holds, in one transaction; a new file appears complete or not at all.
+
+    Blobs that did not change are not written again.  Raises CallError when the target cannot be
+    written, PlanFileError when it is another program's file, damaged, or of a newer format.
+    """
+    refuse_unfit(contents)
+    writer = Writer()
+    texts = {"program": json.dumps({"version": __version__})}
+    for part in fields(contents):
+        texts[part.name] = json.dumps(writer.write(getattr(contents, part.name)), separators=(",", ":"))
+    limits = FileLimits()
+    check_target(path)
+    if path.exists() and path.stat().st_size:
+        check_identity(path)
+        write_database(path, texts, writer.blobs, create=False, limits=limits)
+        return
+    with replacing(path) as part_file:
+        write_database(part_file, texts, writer.blobs, create=True, limits=limits)
+
+
+def load(path: Path, limits: FileLimits | None = None) -> PlanContents:
+    """Everything the plan file holds.
+
+    Raises PlanFileError for a missing, foreign, damaged, newer or oversized file.
+    """
+    allowed = limits if limits is not None else FileLimits()
+    with read_database(path, allowed) as file:
+        texts = file.texts()
+        reader = Reader(file.blob, allowed)
+        values = {
+            part.name: reader.read(texts[part.name]) for part in fields(PlanContents) if part.name in texts
+        }
+        contents = _contents(values)
+        check_shapes(contents)
+    return contents
+
+
+def _contents(values: dict[str, object]) -> PlanContents:
+    for name, hint in _PARTS.items():
+        if name in values and not conforms(values[name], hint):
+            raise Damage(f"{name} holds a value of another kind")
+    settings = values.get("settings", {})
+    if not isinstance(settings, dict) or not all(isinstance(key, str) for key in settings):
+        raise Damage("settings hold a value of another kind")
+    try:
+        return PlanContents(**values)  # type: ignore[arg-type]
+    except TypeError as error:
+        raise Damage(str(error)) from error
