@@ -81,20 +81,22 @@ def _connected(path: Path, create: bool, limits: FileLimits) -> Iterator[sqlite3
             connection.execute("PRAGMA cell_size_check = ON")
             yield connection
     except sqlite3.OperationalError as error:
-        if error.sqlite_errorname.startswith(("SQLITE_BUSY", "SQLITE_LOCKED")):
+        # Errors that Python's own module raises carry no name.
+        name = getattr(error, "sqlite_errorname", "")
+        if name.startswith(("SQLITE_BUSY", "SQLITE_LOCKED")):
             raise CallError(
                 _("another program is writing the plan file."),
                 place=str(path),
                 remedy=_("Try again when it is done."),
             ) from error
-        if error.sqlite_errorname.startswith(("SQLITE_FULL", "SQLITE_READONLY", "SQLITE_CANTOPEN")):
+        if name.startswith(("SQLITE_FULL", "SQLITE_READONLY", "SQLITE_CANTOPEN")):
             raise CallError(
                 _("the plan file cannot be written or opened ({reason}).").format(reason=error),
                 place=str(path),
                 remedy=_("Check the folder's rights and free space; the file holds the last saved state."),
             ) from error
         raise plan_file_error(path, str(error)) from error
-    except sqlite3.Error as error:
+    except (sqlite3.Error, UnicodeError) as error:
         raise plan_file_error(path, str(error)) from error
     except Damage as error:
         raise plan_file_error(path, str(error)) from error
@@ -118,13 +120,13 @@ def _plan_of_saving(connection: sqlite3.Connection, texts: dict[str, str], blobs
     for key in sorted(set(blobs) - old):
         data = blobs[key].data()
         connection.execute("INSERT INTO blobs VALUES (?, ?, ?)", (key, checksum(data), data))
-    before = dict(connection.execute("SELECT name, checksum FROM texts").fetchall())
+    before = dict(connection.execute("SELECT name, json FROM texts").fetchall())
     for name in sorted(set(before) - set(texts)):
         connection.execute("DELETE FROM texts WHERE name = ?", (name,))
     for name, text in texts.items():
-        digest = checksum(text.encode("ascii"))
-        if before.get(name) != digest:
-            connection.execute("INSERT OR REPLACE INTO texts VALUES (?, ?, ?)", (name, text, digest))
+        if before.get(name) != text:
+            row = (name, text, checksum(text.encode("ascii")))
+            connection.execute("INSERT OR REPLACE INTO texts VALUES (?, ?, ?)", row)
 
 
 def write_database(

@@ -10,7 +10,7 @@ from planner import __version__
 from planner.base.target_file import check_target, replacing
 from planner.demand.fitted import FittedModel
 from planner.plan.limits import Limits
-from planner.plan.plans import NamedPlan
+from planner.plan.plans import NamedPlan, States
 from planner.planfile.contents import PlanContents
 from planner.planfile.damage import Damage, FileLimits
 from planner.planfile.database import check_identity, read_database, write_database
@@ -26,6 +26,7 @@ ENDING = ".rangewright"
 _PARTS: dict[str, object] = {
     "loaded": LoadedData | None,
     "fitted": FittedModel | None,
+    "states": States | None,
     "limits": Limits,
     "plans": tuple[NamedPlan, ...],
 }
