@@ -57,6 +57,16 @@ class AssortmentProblem:
     max_changes: int | None = None
     listing_cost: float = 0.0
     delisting_cost: float = 0.0
+    cluster_names: tuple[str, ...] = ()
+    store_names: tuple[str, ...] = ()
+
+    def cluster_name(self, c: int) -> str:
+        """Name of cluster c for people."""
+        return self.cluster_names[c] if 0 <= c < len(self.cluster_names) else str(c)
+
+    def store_name(self, s: int) -> str:
+        """Name of store s for people."""
+        return self.store_names[s] if s < len(self.store_names) else str(s)
 
 
 @dataclass(frozen=True)

@@ -147,5 +147,7 @@ def pose_problem(loaded: LoadedData, fitted: FittedModel, limits: Limits) -> Pos
         max_changes=limits.max_changes,
         listing_cost=limits.listing_cost,
         delisting_cost=limits.delisting_cost,
+        cluster_names=catalogue.clusters,
+        store_names=tuple(store.code for store in catalogue.stores),
     )
     return PosedProblem(problem, goal, notes)

@@ -1,0 +1,1 @@
+"""The optimiser against enumeration; its verifier on its own."""
