@@ -13,14 +13,15 @@ from PySide6.QtWidgets import QWidget
 from pytestqt.qtbot import QtBot
 
 from planner.gui.models.table_model import TableModel
+from planner.gui.theme.cells import BarRow, TallyColumn
 from planner.gui.theme.colours import contrast, marks_of
-from planner.gui.widgets.bar_list import BarList, BarRow
+from planner.gui.widgets.bar_list import BarList
 from planner.gui.widgets.file_rows import FileRow, FileRows, dropped_paths
 from planner.gui.widgets.gap_picture import GapPicture
 from planner.gui.widgets.heat_map import HeatMap
 from planner.gui.widgets.progress_strip import ProgressStrip
 from planner.gui.widgets.table_view import TableView
-from planner.gui.widgets.tally_bar import TallyBar, TallyColumn
+from planner.gui.widgets.tally_bar import TallyBar
 from tests.gui.test_table_model import LOOKS, small
 
 pytestmark = pytest.mark.window

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import html
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -145,8 +145,9 @@ class TableModel(QAbstractTableModel):
         bottom, top = float(every.min()), float(every.max())
         if top == bottom:
             top = bottom + 1.0
+        longest = max(texts_of(column), key=len, default="")
         return [
-            CellBar(float(v), float(a), float(b), bottom, top) if math.isfinite(v) else None
+            CellBar(float(v), float(a), float(b), bottom, top, longest) if math.isfinite(v) else None
             for v, a, b in zip(value, low, high, strict=True)
         ]
 
@@ -284,16 +285,17 @@ class TableModel(QAbstractTableModel):
         """Keys of the shown columns."""
         return tuple(shown.column.key for shown in self._shown)
 
-    def column_width(self, position: int, per_character: int) -> int:
-        """A width in pixels that holds title and texts, from a sample of the rows."""
+    def column_width(self, position: int, measure: Callable[[str], int]) -> int:
+        """A width in pixels that holds title and texts; ``measure`` gives the width of a text."""
         shown = self._shown[position]
-        longest = max((len(text) for text in shown.texts[:200]), default=0)
-        title = self._title(shown)
-        words = max((len(word) for word in title.split()), default=0)
-        text = min(max(longest, words, (len(title) + 1) // 2), 44) * per_character + 18
+        sample = sorted(set(shown.texts), key=len, reverse=True)[:5]
+        text = min(max((measure(line) for line in sample), default=0), measure("n" * 40)) + 16
         if shown.look.check:
             text += 22
-        return text + 70 if shown.look.bar else text
+        if shown.look.bar:
+            text += 72
+        title = max(measure(line) for line in two_lines(self._title(shown)).split("\n")) + 18
+        return max(text, title)
 
     # -- Qt's side -----------------------------------------------------------------------------
 
@@ -416,7 +418,7 @@ class TableModel(QAbstractTableModel):
 def two_lines(title: str) -> str:
     """A long title broken at the space nearest to its middle."""
     spaces = [at for at, letter in enumerate(title) if letter == " "]
-    if len(title) <= 12 or not spaces:
+    if len(title) <= 9 or not spaces:
         return title
     at = min(spaces, key=lambda place: abs(place - len(title) / 2))
     return title[:at] + "\n" + title[at + 1 :]

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from datetime import date
 
-from PySide6.QtCore import QDate, QLocale
+from PySide6.QtCore import QDate, QDateTime, QLocale, Qt
 
 from planner.base.text import _
 
@@ -16,7 +16,7 @@ def number(value: float, decimals: int = 0, signed: bool = False) -> str:
     """A number; ``signed`` puts a plus before gains.  Empty for NaN."""
     if math.isnan(value):
         return ""
-    text = QLocale().toString(abs(value), "f", decimals)
+    text = QLocale().toString(float(abs(value)), "f", decimals)
     # What rounds to zero has no sign.
     zero = not any(c.isdigit() and c not in "0٠۰" for c in text)
     if zero:
@@ -42,6 +42,14 @@ def span(low: float, high: float, decimals: int = 0, signed: bool = False) -> st
 def day(value: date) -> str:
     """A date in the locale's short form."""
     return QLocale().toString(QDate(value.year, value.month, value.day), QLocale.FormatType.ShortFormat)
+
+
+def moment(iso: str) -> str:
+    """An ISO time in the locale's short form and the machine's time zone; other texts as they are."""
+    parsed = QDateTime.fromString(iso, Qt.DateFormat.ISODate)
+    if not parsed.isValid():
+        return iso
+    return QLocale().toString(parsed.toLocalTime(), QLocale.FormatType.ShortFormat)
 
 
 def duration(seconds: float) -> str:

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from PySide6.QtCore import (
     QAbstractListModel,
@@ -28,7 +27,7 @@ from PySide6.QtWidgets import (
 )
 
 from planner.base.text import _
-from planner.gui.theme.cells import CellBar
+from planner.gui.theme.cells import BarRow, CellBar
 from planner.gui.theme.colours import Marks, marks_of, mixed
 from planner.gui.theme.numbers import MINUS
 from planner.gui.widgets.interval_mark import paint_bar
@@ -39,54 +38,20 @@ _RowRole = Qt.ItemDataRole.UserRole + 1
 _PAD = 8
 
 
-@dataclass(frozen=True)
-class BarRow:
-    """kind: "item", "own" (own label), "leaves" (the category), "total" or "heading".
-
-    identity: what is sent when the row is chosen; empty for none.
-    value, low, high: in the list's unit; NaN low/high: no interval.
-    text: the value formatted; interval: the interval formatted; note: shown faint after the label.
-    """
-
-    label: str
-    value: float = math.nan
-    low: float = math.nan
-    high: float = math.nan
-    text: str = ""
-    interval: str = ""
-    kind: str = "item"
-    identity: str = ""
-    note: str = ""
-
-    def words(self) -> str:
-        """The row as one sentence part, for tool tips and screen readers."""
-        head = f"{self.label} ({self.note})" if self.note else self.label
-        if self.kind == "heading":
-            return head
-        if not self.interval:
-            return f"{head}: {self.text}"
-        return _("{label}: {value}, interval {interval}").format(
-            label=head, value=self.text, interval=self.interval
-        )
-
-
 class _BarRows(QAbstractListModel):
     """Rows and the scale they share."""
 
     def __init__(self) -> None:
         super().__init__()
         self.rows: tuple[BarRow, ...] = ()
-        self.bottom, self.top = 0.0, 1.0
+        self.scales: list[tuple[float, float]] = []
 
     def set_rows(self, rows: tuple[BarRow, ...]) -> None:
         same = len(rows) == len(self.rows)
         if not same:
             self.beginResetModel()
         self.rows = rows
-        numbers = [n for row in rows for n in (row.value, row.low, row.high) if math.isfinite(n)]
-        self.bottom, self.top = min([*numbers, 0.0]), max([*numbers, 0.0])
-        if self.top == self.bottom:
-            self.top = self.bottom + 1.0
+        self.scales = _scales(rows)
         if not same:
             self.endResetModel()
         elif rows:
@@ -113,6 +78,17 @@ class _BarRows(QAbstractListModel):
         return Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
 
 
+def _scales(rows: tuple[BarRow, ...]) -> list[tuple[float, float]]:
+    """(bottom, top) for every row: one scale from heading to heading, containing zero."""
+    starts = [row for row, entry in enumerate(rows) if entry.kind == "heading" or row == 0]
+    scales: list[tuple[float, float]] = []
+    for start, end in zip(starts, [*starts[1:], len(rows)], strict=True):
+        numbers = [n for row in rows[start:end] for n in (row.value, row.low, row.high) if math.isfinite(n)]
+        bottom, top = min([*numbers, 0.0]), max([*numbers, 0.0])
+        scales += [(bottom, top if top > bottom else bottom + 1.0)] * (end - start)
+    return scales
+
+
 class _BarPainter(QStyledItemDelegate):
     """Label, bar with whisker, value."""
 
@@ -131,13 +107,16 @@ class _BarPainter(QStyledItemDelegate):
         if selected:
             painter.fillRect(rect, marks.selected)
         font = QFont(option.font)
-        font.setBold(row.kind in ("heading", "total"))
+        font.setBold(row.kind in ("heading", "total", "leaves"))
         painter.setFont(font)
         if row.kind == "heading":
             painter.fillRect(rect, marks.band)
-            self._text(painter, rect.adjusted(_PAD, 0, -_PAD, 0), row.label, marks.text)
+            inside = rect.adjusted(_PAD, 0, -_PAD, 0)
+            self._text(painter, inside, row.label, marks.text)
+            painter.setFont(option.font)
+            self._text(painter, inside, row.note, marks.faint, right=True)
         else:
-            self._row(painter, rect, row, model, marks, colour, selected)
+            self._row(painter, rect, row, model.scales[index.row()], marks, colour, selected)
         if option.state & QStyle.StateFlag.State_HasFocus:
             painter.setPen(colour)
             painter.setBrush(Qt.BrushStyle.NoBrush)
@@ -156,13 +135,13 @@ class _BarPainter(QStyledItemDelegate):
         painter: QPainter,
         rect: QRect,
         row: BarRow,
-        model: _BarRows,
+        scale: tuple[float, float],
         marks: Marks,
         colour: QColor,
         selected: bool,
     ) -> None:
-        widest = painter.fontMetrics().horizontalAdvance("+00,000.0") + _PAD
-        label = QRect(rect.left() + _PAD, rect.top(), int(rect.width() * 0.46) - _PAD, rect.height())
+        widest = painter.fontMetrics().horizontalAdvance("+0,000.0")
+        label = QRect(rect.left() + _PAD, rect.top(), int(rect.width() * 0.5) - _PAD, rect.height())
         number = QRect(rect.right() - widest - _PAD, rect.top(), widest, rect.height())
         bars = QRect(label.right() + _PAD, rect.top() + 4, number.left() - label.right() - 2 * _PAD, 1)
         bars.setHeight(rect.height() - 8)
@@ -176,7 +155,7 @@ class _BarPainter(QStyledItemDelegate):
         own = {"own": marks.own, "leaves": marks.leaves, "total": marks.plain}
         fill = mixed(marks.selected_text, marks.selected, 0.55) if selected else own.get(row.kind)
         pattern = Qt.BrushStyle.BDiagPattern if row.kind == "leaves" else Qt.BrushStyle.SolidPattern
-        bar = CellBar(row.value, row.low, row.high, model.bottom, model.top)
+        bar = CellBar(row.value, row.low, row.high, *scale)
         painter.setClipRect(bars.adjusted(-6, -4, 6, 4))
         paint_bar(painter, bars, bar, marks, colour if selected else marks.line, fill, pattern)
         painter.setClipping(False)
@@ -209,7 +188,7 @@ class BarList(QListView):
         return self._rows.rows
 
     def set_rows(self, rows: Sequence[BarRow]) -> None:
-        """Show other rows, on a common scale that holds all values and intervals."""
+        """Show other rows; rows under one heading share a scale that holds values and intervals."""
         self._rows.set_rows(tuple(rows))
 
     def currentChanged(self, current: Index, previous: Index) -> None:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import Protocol, cast
 
 from PySide6.QtCore import QAbstractItemModel, QEvent, QModelIndex, QObject, QPersistentModelIndex, QRect, Qt
-from PySide6.QtGui import QColor, QFont, QKeyEvent, QMouseEvent, QPainter, QPalette, QPen
+from PySide6.QtGui import QColor, QFont, QFontMetrics, QKeyEvent, QMouseEvent, QPainter, QPalette, QPen
 from PySide6.QtWidgets import (
     QApplication,
     QStyle,
@@ -106,10 +106,13 @@ class CellDelegate(QStyledItemDelegate):
     ) -> QRect:
         """Paint the bar at the left, give back the room for the number."""
         assert cell.bar is not None
-        text_width = min(painter.fontMetrics().horizontalAdvance("−00,000.0"), inside.width() // 2)
+        bold = QFont(painter.font())
+        bold.setBold(True)
+        widest = QFontMetrics(bold).horizontalAdvance(cell.bar.longest) + 6
+        text_width = min(widest, inside.width() * 2 // 3)
         room = QRect(inside)
         room.setWidth(inside.width() - (text_width if cell.text else 0))
-        paint_bar(painter, room.adjusted(0, 4, -4, -4), cell.bar, marks, colour, fill)
+        paint_bar(painter, room.adjusted(0, 5, -4, -5), cell.bar, marks, colour, fill)
         return QRect(room.right(), inside.top(), inside.right() - room.right(), inside.height())
 
     @staticmethod

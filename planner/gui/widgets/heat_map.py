@@ -14,8 +14,8 @@ from planner.base.text import _
 from planner.gui.theme.colours import heat_colours, marks_of
 from planner.gui.theme.numbers import percent
 
-_AXIS = 22
-_KEY = 30
+# Height of the colour key and the week labels above the picture.
+_HEAD = 46
 _ROW = 13
 
 
@@ -39,12 +39,12 @@ class HeatMap(QWidget):
         self._parts, self._rows, self._columns = parts, tuple(rows), tuple(columns)
         self.setAccessibleDescription(words)
         self._draw()
-        self.setMinimumHeight(_ROW * len(self._rows) + _AXIS + _KEY)
+        self.setMinimumHeight(_ROW * len(self._rows) + _HEAD + 6)
         self.updateGeometry()
         self.update()
 
     def sizeHint(self) -> QSize:
-        return QSize(600, max(_ROW * len(self._rows) + _AXIS + _KEY, 200))
+        return QSize(600, max(_ROW * len(self._rows) + _HEAD + 6, 200))
 
     def _draw(self) -> None:
         if not self._parts.size:
@@ -65,7 +65,7 @@ class HeatMap(QWidget):
 
     def _area(self) -> QRect:
         left = self._name_width()
-        return QRect(left, _KEY, self.width() - left - 10, _ROW * len(self._rows))
+        return QRect(left, _HEAD, self.width() - left - 10, _ROW * len(self._rows))
 
     def paintEvent(self, event: QPaintEvent) -> None:
         painter = QPainter(self)
@@ -95,9 +95,9 @@ class HeatMap(QWidget):
         step = max(1, -(-count * width // max(area.width(), 1)))
         for column in range(0, count, step):
             x = area.left() + column * area.width() // count
-            painter.drawLine(x, area.bottom() + 1, x, area.bottom() + 4)
+            painter.drawLine(x, area.top() - 4, x, area.top() - 1)
             if x + width - 24 <= self.width():
-                painter.drawText(QPoint(x, area.bottom() + 6 + metrics.ascent()), self._columns[column])
+                painter.drawText(QPoint(x, area.top() - 6), self._columns[column])
 
     def _key(self, painter: QPainter, area: QRect) -> None:
         """The colour key: none to all stores."""

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import Protocol, cast
 
 from PySide6.QtCore import QAbstractItemModel, QModelIndex, QPersistentModelIndex, QPoint, Qt, Signal
-from PySide6.QtGui import QAction, QGuiApplication, QKeySequence
+from PySide6.QtGui import QAction, QGuiApplication, QKeyEvent, QKeySequence
 from PySide6.QtWidgets import QAbstractItemView, QFrame, QHeaderView, QMenu, QTableView, QWidget
 
 from planner.base.text import _
@@ -23,7 +24,7 @@ class HasRows(Protocol):
 
     def heading_rows(self) -> list[int]: ...
 
-    def column_width(self, position: int, per_character: int) -> int: ...
+    def column_width(self, position: int, measure: Callable[[str], int]) -> int: ...
 
 
 class TableView(QTableView):
@@ -38,6 +39,7 @@ class TableView(QTableView):
         self._kept = ""
         self._widths_for: tuple[str, ...] = ()
         self._spanned: list[int] = []
+        self._most_rows = 0
         self._set_up()
         self._copy_action = QAction(_("&Copy"), self)
         self._copy_action.setShortcut(QKeySequence(QKeySequence.StandardKey.Copy))
@@ -99,6 +101,7 @@ class TableView(QTableView):
     def _restore(self) -> None:
         self._span()
         self._set_widths()
+        self._fit_height()
         if self._kept:
             self.choose(self._kept)
 
@@ -120,9 +123,32 @@ class TableView(QTableView):
         if titles == self._widths_for or not model.rowCount():
             return
         self._widths_for = titles
-        per_character = self.fontMetrics().averageCharWidth() + 1
+        measure = self.fontMetrics().horizontalAdvance
         for column in range(len(titles)):
-            self.setColumnWidth(column, self._rows().column_width(column, per_character))
+            self.setColumnWidth(column, self._rows().column_width(column, measure))
+
+    def fit_rows(self, most: int) -> None:
+        """Be no higher than the rows, and no higher than ``most`` of them."""
+        self._most_rows = most
+        self._fit_height()
+
+    def _fit_height(self) -> None:
+        if self._most_rows:
+            rows = min(max(self.model().rowCount(), 1), self._most_rows)
+            head = self.horizontalHeader().sizeHint().height()
+            bar = self.horizontalScrollBar().sizeHint().height()
+            self.setFixedHeight(head + rows * self.verticalHeader().defaultSectionSize() + bar + 2)
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """The space bar turns the box of the current row, whichever column is current."""
+        row = self.currentIndex().row()
+        if event.key() == Qt.Key.Key_Space and row >= 0:
+            for column in range(self.model().columnCount()):
+                index = self.model().index(row, column)
+                if self.model().flags(index) & Qt.ItemFlag.ItemIsUserCheckable:
+                    self.model().setData(index, None, Qt.ItemDataRole.CheckStateRole)
+                    return
+        super().keyPressEvent(event)
 
     def currentChanged(self, current: Index, previous: Index) -> None:
         super().currentChanged(current, previous)

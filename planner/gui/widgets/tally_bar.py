@@ -4,45 +4,18 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from PySide6.QtCore import QPointF, QRect, QSize, Qt
 from PySide6.QtGui import QAction, QFont, QGuiApplication, QKeySequence, QPainter, QPaintEvent, QPalette, QPen
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
 from planner.base.text import _
-from planner.gui.theme.cells import CellBar
+from planner.gui.theme.cells import CellBar, TallyColumn
 from planner.gui.theme.colours import Marks, marks_of
 from planner.gui.theme.numbers import MINUS
 from planner.gui.widgets.interval_mark import paint_interval, place
 
 _PAD = 10
-
-
-@dataclass(frozen=True)
-class TallyColumn:
-    """One measure, formatted.  interval: of the change, empty when the change is exact.
-
-    value, low, high: the change in numbers, for the mark under it; NaN for none.
-    """
-
-    title: str
-    today: str
-    plan: str
-    change: str
-    interval: str = ""
-    value: float = math.nan
-    low: float = math.nan
-    high: float = math.nan
-
-    def words(self) -> str:
-        """The column as a sentence part."""
-        text = _("{title}: today {today}, plan {plan}, change {change}").format(
-            title=self.title, today=self.today, plan=self.plan, change=self.change
-        )
-        if not self.interval:
-            return text
-        return _("{text}, 80 % interval {interval}").format(text=text, interval=self.interval)
 
 
 class TallyBar(QWidget):

@@ -22,8 +22,9 @@ def heading(text: str, size: float = 1.25) -> QLabel:
 class Words(QLabel):
     """Sentences under each other, to be read, selected and copied."""
 
-    def __init__(self, name: str, parent: QWidget | None = None) -> None:
+    def __init__(self, name: str, parent: QWidget | None = None, spaced: bool = True) -> None:
         super().__init__(parent)
+        self._between = "\n\n" if spaced else "\n"
         self.setAccessibleName(name)
         self.setWordWrap(True)
         self.setTextFormat(Qt.TextFormat.PlainText)
@@ -31,11 +32,11 @@ class Words(QLabel):
         self.setTextInteractionFlags(
             Qt.TextInteractionFlag.TextSelectableByMouse | Qt.TextInteractionFlag.TextSelectableByKeyboard
         )
-        self.setSizePolicy(QSizePolicy.Policy.Preferred, QSizePolicy.Policy.MinimumExpanding)
+        self.setSizePolicy(QSizePolicy.Policy.Preferred, QSizePolicy.Policy.Minimum)
 
     def set_sentences(self, sentences: Sequence[str]) -> None:
         """One paragraph per sentence."""
-        self.setText("\n\n".join(sentences))
+        self.setText(self._between.join(sentences))
         self.setVisible(bool(sentences))
 
 
