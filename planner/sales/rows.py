@@ -298,7 +298,7 @@ def _used_rows(
     def number(name: str, per_unit: bool = False) -> Floats | None:
         if name not in read.numbers:
             return None
-        values = pick(read.numbers[name].values)
+        values: Floats = pick(read.numbers[name].values)
         return values / pick(factor) if per_unit and factor is not None else values
 
     def flag(name: str, text_is_yes: bool) -> Floats | None:
@@ -308,7 +308,8 @@ def _used_rows(
         # The name of a promotion in a promotion column means that there was one.
         if text_is_yes and unclear.any():
             value = np.maximum(value, unclear.astype(np.float64))
-        return pick(value)
+        picked: Floats = pick(value)
+        return picked
 
     return SalesRows(
         row=rows,

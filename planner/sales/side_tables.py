@@ -119,8 +119,8 @@ def note_unreadable(table: Matched, ours: str, bad: Bools, ledger: Ledger) -> No
 
 def read_shoppers(
     table: Matched, axes: Axes, calendar: Calendar, opened: Bools, units: Floats, ledger: Ledger
-) -> tuple[Floats, list[str]]:
-    """(shoppers (S, W), notes).  units (S, W): category units, to fill stores without a count.
+) -> tuple[Floats | None, list[str]]:
+    """(shoppers (S, W) or None when no row is usable, notes).  units (S, W): category units, to fill stores without a count.
 
     Days are added up; a missing week takes the store's median; a store without any count takes its
     units times the chain's shoppers per unit.
@@ -142,10 +142,12 @@ def read_shoppers(
     notes: list[str] = []
     wanted = opened & np.isnan(found)
     counted = ~np.isnan(found).all(axis=1)
+    both = counted[:, None] & opened & (units > 0.0)
+    if not both.any():
+        return None, [_("No shopper count belongs to a store and week with sales; none is used.")]
     for s in np.flatnonzero(counted):
         found[s] = np.where(np.isnan(found[s]), np.nanmedian(found[s]), found[s])
-    both = counted[:, None] & opened & (units > 0.0)
-    per_unit = float((found[both].sum()) / units[both].sum()) if both.any() else np.nan
+    per_unit = float(found[both].sum() / units[both].sum())
     for s in np.flatnonzero(~counted):
         found[s] = np.maximum(units[s] * per_unit, 1.0)
     filled = int(wanted[counted].sum())

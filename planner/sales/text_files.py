@@ -128,7 +128,15 @@ def _delimiter(data: bytes) -> str:
 
 
 def _headers(data: bytes, delimiter: str, path: Path) -> list[str]:
-    row = next(csv.reader(io.StringIO(data[:1_000_000].decode("utf-8", "replace")), delimiter=delimiter))
+    head = io.StringIO(data[:1_000_000].decode("utf-8", "replace"), newline="")
+    try:
+        row = next(csv.reader(head, delimiter=delimiter))
+    except csv.Error as error:
+        raise DataError(
+            _("the first row cannot be read as column names ({why}).").format(why=error),
+            place=path.name,
+            remedy=_("Check that the file is a text table with a header row."),
+        ) from error
     headers = [cell.strip() for cell in row]
     named: list[str] = []
     for k, header in enumerate(headers):

@@ -144,6 +144,12 @@ def test_shoppers(tmp_path: Path) -> None:
     assert "1 stores have no shopper counts" in said
 
 
+def test_shoppers_of_other_stores_are_not_used(tmp_path: Path) -> None:
+    loaded = load_rows(tmp_path, shoppers=[{"store": "S77", "week": "2024-01-01", "shoppers": 50}])
+    assert loaded.panel.shoppers is None
+    assert any("No shopper count" in note for note in loaded.report.notes)
+
+
 def test_daily_shoppers_are_added_up(tmp_path: Path) -> None:
     shoppers = [
         {"store": store, "date": f"2024-01-{day:02d}", "visitors": 10}
