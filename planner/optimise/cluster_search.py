@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import heapq
 import itertools
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -22,7 +23,7 @@ Ints = NDArray[np.int64]
 _FEW_PLANS = 60_000
 _REDUCE_ROUNDS = 4
 _ROOT_ROUNDS = 12
-_RANGE_TOLERANCE = 5e-3
+_RANGE_TOLERANCE = 1e-2
 
 
 @dataclass
@@ -38,18 +39,21 @@ class ClusterSearch:
     """Best plan of one cluster with at most ``changes`` changes (None: any number).
 
     value, states: the best found; bound: proven; ``step`` works on one node and returns quickly.
+    stopped: asked between programs; a step that is interrupted keeps its node's bound.
     gap: relative; nodes that cannot beat the value by more than it are closed.
     """
 
     def __init__(
         self,
         model: ClusterModel,
-        blocks: list[Block] | None,
+        blocks: Callable[[], list[Block] | None],
         changes: int | None,
         start: States,
         gap: float,
         known_bound: float = np.inf,
+        stopped: Callable[[], bool] = lambda: False,
     ) -> None:
+        self.stopped = stopped
         self.model, self.changes, self.gap = model, changes, gap
         self.value, self.states = float(model.objective(start)), start
         self.nodes = 0
@@ -62,9 +66,14 @@ class ClusterSearch:
 
     def _open(self) -> None:
         """List the root's combinations; done late, since many searches are never refined."""
-        assert self._blocks is not None
         assert self._unopened is not None
-        left = within_limits(self.model, self._blocks, self.changes)
+        blocks = self._blocks()
+        if blocks is None:
+            # Too many combinations to list: the coarse bound stands.
+            self._closed = self._unopened
+            self._unopened = None
+            return
+        left = within_limits(self.model, blocks, self.changes)
         if all(block.size for block in left):
             free = np.full(self.model.n_components, np.inf)
             _centre, mu = self._centre()
@@ -91,7 +100,7 @@ class ClusterSearch:
     def done(self) -> bool:
         """The bound is within the gap, or nothing can be refined."""
         if self._unopened is not None:
-            return self._blocks is None or self._unopened <= self.target
+            return self._unopened <= self.target
         return not self._heap or -self._heap[0][0] <= self.target
 
     def offer(self, states: States) -> None:
@@ -113,6 +122,9 @@ class ClusterSearch:
         survivor = self._reduced(node)
         if survivor is None:
             return
+        if self.stopped():
+            self._push(survivor)
+            return
         for child in self._children(survivor):
             self._push(child)
 
@@ -124,6 +136,8 @@ class ClusterSearch:
         """Bound a node again and again while combinations drop out; None when it is closed."""
         rounds = _ROOT_ROUNDS if self.nodes == 1 else _REDUCE_ROUNDS
         for _number in range(rounds):
+            if self.stopped():
+                break
             if self._enumerated(node):
                 return None
             before, old = sum(block.size for block in node.blocks), node.bound
@@ -197,8 +211,8 @@ class ClusterSearch:
         """Combinations whose best plan may still reach the target."""
         spare = found.value - self.target + 1e-9 * abs(found.value)
         kept = []
-        for block, gain in zip(node.blocks, found.reduced, strict=True):
-            stays = np.flatnonzero(gain >= gain.max() - spare)
+        for block, gain, top in zip(node.blocks, found.reduced, found.tops, strict=True):
+            stays = np.flatnonzero(gain >= top - spare)
             if stays.size < block.size:
                 self._close(self.target)
             kept.append(block.only(stays))
@@ -214,6 +228,8 @@ class ClusterSearch:
         edges = {"low": box.low.copy(), "high": box.high.copy()}
         edges |= {"t_low": box.t_low.copy(), "t_high": box.t_high.copy()}
         for r in range(n):
+            if self.stopped():
+                break
             for names, by_phi in ((("low", "high"), 0.0), (("t_low",), 1.0)):
                 for name, sign in zip(names, (-1.0, 1.0), strict=False):
                     objective = np.zeros(4 * n)
@@ -260,7 +276,8 @@ class ClusterSearch:
         """Halve the list of the segment whose W differs most, at the middle of its weighted W."""
         high = np.maximum(value_box(node.blocks, node.box).high, 1e-300)
         weight = self.model.demand(high) / high
-        spread = [float(np.ptp(b.inclusive, axis=0) @ weight) if b.size > 1 else -1.0 for b in node.blocks]
+        n = self.model.n_components
+        spread = [float((b.highest[:n] - b.lowest[:n]) @ weight) if b.size > 1 else -1.0 for b in node.blocks]
         g = int(np.argmax(spread))
         block = node.blocks[g]
         key = block.inclusive @ weight
@@ -288,6 +305,8 @@ def coarse_bound(model: ClusterModel) -> float:
     return float(model.demand(inclusive).sum()) * top - cheapest
 
 
-def blocks_or_none(model: ClusterModel) -> list[Block] | None:
+def blocks_or_none(model: ClusterModel, most_changes: int | None) -> list[Block] | None:
     """Listed combinations, None when a segment has too many."""
-    return blocks_of(model) if combinations(model) <= MOST_COMBINATIONS else None
+    if combinations(model) > MOST_COMBINATIONS:
+        return None
+    return blocks_of(model, most_changes)

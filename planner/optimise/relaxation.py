@@ -56,28 +56,31 @@ class _Rows:
 
 @dataclass(frozen=True)
 class Bound:
-    """value: proven upper bound; reduced: per block the reduced cost of every combination.
+    """value: proven upper bound; reduced: per block an upper bound on every combination's reduced
+    cost; tops: per block the largest, exactly.
 
     chosen: per block the weight of each generated combination {index: weight}.
     """
 
     value: float
     reduced: list[Floats]
+    tops: list[float]
     chosen: list[dict[int, float]]
 
 
 def value_box(blocks: list[Block], known: Box) -> Box:
     """``known`` narrowed by the combinations left: sums of each segment's least and largest."""
-    t = [block.weighted - known.mu * block.inclusive for block in blocks]
+    n = known.mu.size
+    ranges = [block.t_range(known.mu) for block in blocks]
 
     def total(parts: list[Floats]) -> Floats:
         return np.asarray(np.sum(parts, axis=0), dtype=np.float64)
 
     return Box(
-        np.maximum(total([b.inclusive.min(axis=0) for b in blocks]), known.low),
-        np.minimum(total([b.inclusive.max(axis=0) for b in blocks]), known.high),
-        np.maximum(total([part.min(axis=0) for part in t]), known.t_low),
-        np.minimum(total([part.max(axis=0) for part in t]), known.t_high),
+        np.maximum(total([block.lowest[:n] for block in blocks]), known.low),
+        np.minimum(total([block.highest[:n] for block in blocks]), known.high),
+        np.maximum(total([low for low, _high in ranges]), known.t_low),
+        np.minimum(total([high for _low, high in ranges]), known.t_high),
         known.mu,
     )
 
@@ -140,6 +143,20 @@ def _k_lines(
     return lines
 
 
+def priced(block: Block, price: Floats) -> tuple[Floats, float]:
+    """Upper bounds (n,) on terms x price, and the exact largest of terms x price.
+
+    Single precision finds the candidates; its error is at most a few units in the last place of
+    every product, added to the bounds, and the candidates are computed again in double precision.
+    """
+    error = (price.size + 3) * 1.2e-7 * float(block.largest @ np.abs(price)) + 1e-30
+    rough = price.astype(np.float32) @ block.short
+    top = float(rough.max())
+    candidates = np.flatnonzero(rough >= top - 2.0 * error)
+    best = float((price @ block.terms[:, candidates]).max())
+    return rough.astype(np.float64) + error, best
+
+
 class Relaxation:
     """The master program of one node; solves for the bound, or for the range of a component's W or T."""
 
@@ -163,20 +180,24 @@ class Relaxation:
         self._build()
 
     def _sides(self, changes: int | None) -> None:
-        """Side rows a x <= b over combinations: per block (n, rows)."""
-        model = self.model
-        right = [*model.room, model.most, -model.least]
-        columns = [np.column_stack([b.use, b.count, -b.count]) for b in self.blocks]
-        if changes is not None:
-            right.append(float(changes))
-            columns = [np.column_stack([c, b.changes]) for c, b in zip(columns, self.blocks, strict=True)]
-        self.side, self.side_right = columns, np.array(right)
+        """Side rows a x <= b over combinations: space, most and least items, changes."""
+        most = np.inf if changes is None else float(changes)
+        self.side_right = np.array([*self.model.room, self.model.most, -self.model.least, most])
+        self.side_right = np.where(np.isfinite(self.side_right), self.side_right, 1e9)
+
+    def _side_of(self, block: Block, picks: Ints) -> Floats:
+        """Side columns (rows, n) of some combinations."""
+        rows = np.column_stack(
+            [block.use[picks], block.count[picks], -block.count[picks], block.changes[picks]]
+        )
+        return rows.T
 
     def _structural_boxes(self, top: float) -> None:
         """Finite ranges of (W, Phi, u, y), wide enough for every choice of combinations."""
         box, blocks = self.box, self.blocks
-        phi_low = sum(b.weighted.min(axis=0) for b in blocks)
-        phi_high = sum(b.weighted.max(axis=0) for b in blocks)
+        phi = slice(self.n, 2 * self.n)
+        phi_low = np.sum([block.lowest[phi] for block in blocks], axis=0)
+        phi_high = np.sum([block.highest[phi] for block in blocks], axis=0)
         q = self.model.demand(box.high)
         worst = float(min(self.model.value.min(), 0.0))
         self.lower = np.concatenate([box.low, phi_low, np.zeros(self.n), worst * q - 1.0])
@@ -235,7 +256,7 @@ class Relaxation:
         matrix = np.zeros((n_rows, new.size))
         matrix[: self.n] = -block.inclusive[new].T
         matrix[self.n : 2 * self.n] = -block.weighted[new].T
-        matrix[self.rows["side"] : self.rows["block"]] = self.side[g][new].T
+        matrix[self.rows["side"] : self.rows["block"]] = self._side_of(block, new)
         matrix[self.rows["block"] + g] = 1.0
         if self.at_least is not None:
             matrix[-1] = block.cost[new]
@@ -250,7 +271,7 @@ class Relaxation:
         self.objective, self.cost_weight = objective, 0.0
         self.program.set_costs(np.concatenate([objective, self.penalty, np.zeros(len(self.columns))]))
 
-    def _recomputed(self, dual: Floats) -> tuple[float, list[Floats]]:
+    def _recomputed(self, dual: Floats) -> tuple[float, list[Floats], list[float]]:
         """A valid bound from any duals: signs clipped, boxes and best combinations put in."""
         y = dual.copy()
         inequality = slice(self.rows["cut"], self.rows["block"])
@@ -268,13 +289,17 @@ class Relaxation:
         total += float(cut @ self.cut_right) + float(side @ self.side_right)
         if self.at_least is not None:
             total -= floor * self.at_least
-        reduced = []
-        for block, columns in zip(self.blocks, self.side, strict=True):
-            gain = block.inclusive @ link[: self.n] + block.weighted @ link[self.n :]
-            gain -= columns @ side + (self.cost_weight + floor) * block.cost
+        q = self.model.room.size
+        price = np.concatenate(
+            [link, -side[:q], [side[q + 1] - side[q], -side[q + 2], -(self.cost_weight + floor)]]
+        )
+        reduced, tops = [], []
+        for block in self.blocks:
+            gain, best = priced(block, price)
             reduced.append(gain)
-            total += float(gain.max())
-        return total + 1e-9 * max(1.0, abs(total)), reduced
+            tops.append(best)
+        total += sum(tops)
+        return total + 1e-9 * max(1.0, abs(total)), reduced, tops
 
     def solve(self, stop_below: float = -np.inf, tolerance: float = 1e-7) -> Bound | None:
         """Generate columns until none prices out by ``tolerance`` or the bound falls below ``stop_below``.
@@ -283,27 +308,27 @@ class Relaxation:
 
         None: the program has no solution, so the node holds no plan.
         """
-        best, best_reduced = np.inf, None
+        best, kept = np.inf, None
         for _round in range(_ROUNDS):
             answer = self.program.solve()
             if answer.status is not LinearStatus.OPTIMAL:
                 break
-            bound, reduced = self._recomputed(answer.dual)
+            bound, reduced, tops = self._recomputed(answer.dual)
             if bound < best:
-                best, best_reduced = bound, reduced
+                best, kept = bound, (reduced, tops)
             duals = answer.dual[self.rows["block"] : self.rows["floor"]]
             excess, scale = 0.0, 1e-9 * max(1.0, abs(answer.value))
             for g, gain in enumerate(reduced):
                 over = gain - duals[g]
-                excess += max(float(over.max()), 0.0)
+                excess += max(tops[g] - float(duals[g]), 0.0)
                 take = min(_COLUMNS_PER_ROUND, over.size)
                 picks = np.argpartition(-over, take - 1)[:take]
                 self.add(g, picks[over[picks] > scale])
             if best <= stop_below or excess <= tolerance * max(1.0, abs(answer.value)):
                 break
-        if best_reduced is None:
+        if kept is None:
             return None
-        return Bound(best, best_reduced, self._chosen(answer.x))
+        return Bound(best, *kept, self._chosen(answer.x))
 
     def _chosen(self, x: Floats) -> list[dict[int, float]]:
         weights: list[dict[int, float]] = [{} for _ in self.blocks]

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import time
+from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -33,16 +35,31 @@ _REPORT_SECONDS = 0.3
 class _Cluster:
     """The searches of one cluster by number of changes (None: any)."""
 
-    def __init__(self, model: ClusterModel, settings: SolverSettings, deadline: float) -> None:
-        self.model = model
-        self.blocks: list[Block] | None = blocks_or_none(model)
+    def __init__(
+        self,
+        model: ClusterModel,
+        settings: SolverSettings,
+        most_changes: int | None,
+        stopped: Callable[[], bool],
+    ) -> None:
+        self.model, self.settings, self.most_changes, self.stopped = model, settings, most_changes, stopped
         self.gap = 0.5 * settings.gap
         self.searches: dict[int | None, ClusterSearch] = {}
-        self.settings, self.deadline = settings, deadline
+        self.priced: list[tuple[float, ClusterSearch]] = []
+        self._listed: list[Block] | None = None
 
-    def best_start(self, changes: int | None, known: list[States], starts: int) -> States | None:
+    def blocks(self) -> list[Block] | None:
+        """Combinations of every segment, listed once and late; None when there are too many."""
+        if self._listed is None:
+            self._listed = blocks_or_none(self.model, self.most_changes)
+        return self._listed
+
+    def best_start(
+        self, changes: int | None, known: list[States], starts: int, most_seconds: float = np.inf
+    ) -> States | None:
         """Best of a few climbs: from today, from plans known and from random feasible plans."""
         model = self.model
+        began = time.monotonic()
         rng = np.random.default_rng(self.settings.seed)
         worth = model.attraction * model.value
         tries: list[States | None] = [*known]
@@ -52,7 +69,7 @@ class _Cluster:
         for number in range(starts + len(tries)):
             if number < len(tries):
                 plan = tries[number]
-            elif found and time.monotonic() > self.deadline:
+            elif found and (self.stopped() or time.monotonic() - began > most_seconds):
                 break
             else:
                 wish = worth / max(float(np.abs(worth).max()), 1e-12) + rng.normal(0.0, 0.3, worth.size)
@@ -61,9 +78,22 @@ class _Cluster:
                 found.append(improve(model, plan, changes))
         return max(found, key=lambda pair: pair[0])[1] if found else None
 
+    def price_changes(self, price: float, most: int, start: States) -> None:
+        """A search in which every change costs ``price`` more: its bound + price x k holds for k changes."""
+        costs = self.model.costs + price
+        costs[np.arange(self.model.today.size), self.model.today] -= price
+        model = replace(self.model, costs=costs)
+
+        def blocks() -> list[Block] | None:
+            listed = self.blocks()
+            return None if listed is None else [block.with_price(price) for block in listed]
+
+        search = ClusterSearch(model, blocks, most, start, self.gap, stopped=self.stopped)
+        self.priced.append((price, search))
+
     def open(self, changes: int | None, start: States, known_bound: float = np.inf) -> ClusterSearch:
         """The search for this number of changes."""
-        search = ClusterSearch(self.model, self.blocks, changes, start, self.gap, known_bound)
+        search = ClusterSearch(self.model, self.blocks, changes, start, self.gap, known_bound, self.stopped)
         self.searches[changes] = search
         return search
 
@@ -102,7 +132,7 @@ class _Run:
         self.began = time.monotonic()
         self.deadline = self.began + settings.seconds
         self.clusters = [
-            _Cluster(cluster_model(problem, c), settings, self.began + 0.25 * settings.seconds)
+            _Cluster(cluster_model(problem, c), settings, problem.max_changes, self.stopped)
             for c in range(problem.value.shape[0])
         ]
         self.iterations = 0
@@ -112,14 +142,16 @@ class _Run:
         """Time is over or the user asked to stop."""
         return time.monotonic() > self.deadline or self.progress.cancelled()
 
-    def show(self, value: float, bound: float, changes: int) -> None:
-        """Stream the best so far, a few times a second."""
+    def show(self, value: float, bound: float, states: States) -> None:
+        """Stream the best so far, a few times a second; the states outlive a process that is ended."""
         now = time.monotonic()
         if now - self._reported >= _REPORT_SECONDS:
             self._reported = now
             part = min(0.99, (now - self.began) / self.settings.seconds)
             self.progress.report(_("Searching for the best plan"), part)
-            self.progress.improved({"value": value, "bound": bound, "changes": changes})
+            self.progress.improved(
+                {"value": value, "bound": bound, "states": states, "seconds": now - self.began}
+            )
 
     # -- any number of changes ---------------------------------------------------------------
 
@@ -135,12 +167,13 @@ class _Run:
         for cluster, search in zip(self.clusters, searches, strict=True):
             if self.stopped():
                 break
-            better = cluster.best_start(None, [search.states], self.settings.starts - 1)
+            seconds = 0.1 * self.settings.seconds / len(self.clusters)
+            better = cluster.best_start(None, [search.states], self.settings.starts - 1, seconds)
             if better is not None:
                 search.offer(better)
         while not self.stopped():
             value, bound = sum(s.value for s in searches), sum(s.bound for s in searches)
-            self.show(value, bound, sum(int(s.model.changes_of(s.states)) for s in searches))
+            self.show(value, bound, np.stack([s.states for s in searches]))
             open_ones = [s for s in searches if not s.done]
             if bound - value <= self.settings.gap * abs(value) or not open_ones:
                 break
@@ -164,17 +197,17 @@ class _Run:
         lower, picks = self._allocation(most, value=True)
         if not np.isfinite(lower[most]):
             return None
+        self._price_changes(lower, picks[most], most)
         while not self.stopped():
             lower, picks = self._allocation(most, value=True)
             upper, ways = self._allocation(most, value=False)
-            self.show(lower[most], upper[most], most)
+            self.show(float(lower[most]), float(upper[most]), self._plan(picks[most]))
             if upper[most] - lower[most] <= self.settings.gap * abs(lower[most]):
                 break
-            cells = [self.clusters[c].searches[k] for c, k in enumerate(ways[most])]
-            cells = [cell for cell in cells if not cell.done]
-            if not cells:
+            cell = self._next_cell(ways[most])
+            if cell is None:
                 break
-            max(cells, key=lambda s: s.bound - s.value).step()
+            cell.step()
             self.iterations += 1
         lower, picks = self._allocation(most, value=True)
         upper, _ways = self._allocation(most, value=False)
@@ -184,6 +217,23 @@ class _Run:
             if np.isfinite(lower[k])
         )
         return self._plan(picks[most]), float(upper[most]), rungs
+
+    def _price_changes(self, lower: Floats, pick: tuple[int, ...], most: int) -> None:
+        """Price a change at what the last ones bring (the slope of the ladder's concave hull at its end)."""
+        rungs = np.flatnonzero(np.isfinite(lower[:most]))
+        slopes = (lower[most] - lower[rungs]) / (most - rungs)
+        price = max(float(slopes.min()), 0.0) if rungs.size else 0.0
+        for cluster, k in zip(self.clusters, pick, strict=True):
+            cluster.price_changes(price, most, cluster.searches[k].states)
+
+    def _next_cell(self, way: tuple[int, ...]) -> ClusterSearch | None:
+        """First the priced searches, which bound every rung at once; then the rung's own cells."""
+        priced = [search for cluster in self.clusters for _price, search in cluster.priced]
+        for searches in (priced, [self.clusters[c].searches[k] for c, k in enumerate(way)]):
+            unfinished = [search for search in searches if not search.done]
+            if unfinished:
+                return max(unfinished, key=lambda search: search.bound - search.value)
+        return None
 
     def _plan(self, pick: tuple[int, ...]) -> States:
         return np.stack([self.clusters[c].searches[k].states for c, k in enumerate(pick)])
@@ -206,9 +256,11 @@ class _Run:
         for k in range(most, -1, -1):
             if k in searches and searches[k].bound < best:
                 best, at = searches[k].bound, k
+            priced = min((s.bound + price * k for price, s in self.clusters[c].priced), default=np.inf)
             # The bound may come from a search with more changes; the one to refine is its own.
             first = min(key for key in searches if key is not None)
-            curve[k], source[k] = (best, k if k in searches else at) if k >= first else (-np.inf, -1)
+            least = max(min(best, priced), searches[max(first, k)].value if k in searches else -np.inf)
+            curve[k], source[k] = (least, k if k in searches else at) if k >= first else (-np.inf, -1)
         return curve, source
 
     def _allocation(self, most: int, value: bool) -> tuple[Floats, list[tuple[int, ...]]]:
