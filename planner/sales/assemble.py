@@ -18,6 +18,7 @@ from planner.sales.build_catalogue import (
     build_catalogue,
     known_items,
     rows_of_other_categories,
+    with_known_clusters,
 )
 from planner.sales.build_panel import (
     Cubes,
@@ -68,6 +69,7 @@ class JudgedRows:
     rows: SalesRows
     stores: list[Store]
     category: str
+    weighed: bool
 
 
 @dataclass(frozen=True)
@@ -106,7 +108,8 @@ def judge_rows(request: LoadRequest, tables: dict[str, Matched]) -> JudgedRows:
     stores = read_stores(tables.get("stores"), sales.column("store").texts(), ledger)
     store_index = code_index([store.code for store in stores])
     rows = judge(read, ledger, known.index, store_index, other, joining, request.baseline_weeks)
-    return JudgedRows(request, tables, calendar, ledger, known, joining, rows, stores, category)
+    weighed = read.units.exact.has_fractions()
+    return JudgedRows(request, tables, calendar, ledger, known, joining, rows, stores, category, weighed)
 
 
 def place_on_axes(judged: JudgedRows) -> Placed:
@@ -238,6 +241,10 @@ def _said_about_history(placed: Placed, panel: MarketPanel) -> list[str]:
         notes.append(_("{n} store-weeks hold no sales at all and are left out.").format(n=missing))
     if placed.judged.rows.net_money:
         notes.append(_("Sales are net of VAT; consumer prices are sales with VAT added."))
+    elif any(item.vat_rate for item in placed.catalogue.items):
+        notes.append(_("VAT rates are known: sales are taken as consumer money with VAT inside."))
+    if placed.judged.weighed:
+        notes.append(_("Some units are fractions (weighed items): they count as content sold."))
     if "stores" not in placed.judged.tables:
         notes.append(_("No stores table: all stores are one cluster."))
     if "shoppers" not in placed.judged.tables:
@@ -259,7 +266,7 @@ def assemble(placed: Placed, progress: Progress) -> LoadedData:
     base = _base(placed, panel, notes)
     costs = [None if np.isnan(cost) else float(cost) for cost in base.cost]
     items = tuple(replace(item, cost=cost) for item, cost in zip(placed.catalogue.items, costs, strict=True))
-    catalogue = replace(placed.catalogue, items=items)
+    catalogue = replace(placed.catalogue, items=with_known_clusters(items, placed.catalogue, notes))
     _last_checks(placed, base)
     notes += _said_about_history(placed, panel)
     used: Decimal = ledger.money.total(ledger.used)

@@ -173,3 +173,21 @@ def build_catalogue(
     alone = [name for g, name in enumerate(catalogue.segments) if catalogue.segment_of_item().count(g) == 1]
     ledger.note_other("segment_with_one_item", [(ledger.raw.file, 0, name) for name in alone])
     return catalogue, position
+
+
+def with_known_clusters(items: tuple[Item, ...], catalogue: Catalogue, notes: list[str]) -> tuple[Item, ...]:
+    """Offers' clusters under the catalogue's names; names that are no cluster are said and dropped."""
+    names = {plain(cluster): cluster for cluster in catalogue.clusters}
+    result = []
+    for item in items:
+        known = tuple(names[plain(name)] for name in item.offered_to if plain(name) in names)
+        unknown = [name for name in item.offered_to if plain(name) not in names]
+        if unknown:
+            notes.append(
+                _("Offer {item} names {unknown}, which is none of the clusters {clusters}.").format(
+                    item=item.code, unknown=", ".join(unknown), clusters=", ".join(catalogue.clusters)
+                )
+            )
+        # An offer for nobody we know stays closed rather than open to all.
+        result.append(replace(item, offered_to=known or item.offered_to))
+    return tuple(result)

@@ -125,6 +125,12 @@ class RawTable:
     def __len__(self) -> int:
         return int(self.rows.size)
 
+    def repeats(self) -> NDArray[np.bool_]:
+        """Rows (n,) that repeat an earlier row in every cell."""
+        cells = {k: column.codes for k, column in enumerate(self.columns.values())}
+        repeated: NDArray[np.bool_] = pd.DataFrame(cells).duplicated(keep="first").to_numpy()
+        return repeated
+
     def headers(self) -> str:
         """The headers that are there, for messages."""
         names = list(self.columns)

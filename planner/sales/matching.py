@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import difflib
 import re
+import shlex
 import unicodedata
 from dataclasses import dataclass
 
@@ -13,7 +14,7 @@ from planner.base.errors import DataError
 from planner.base.text import _
 from planner.sales.columns import RawTable, TextColumn
 from planner.sales.request import LoadRequest
-from planner.sales.synonyms import CHOICES, COLUMNS, CURRENCIES, NEEDED
+from planner.sales.synonyms import CHOICES, COLUMNS, CURRENCIES, DESCRIPTIVE, NEEDED
 
 
 @dataclass(frozen=True)
@@ -119,10 +120,12 @@ def _by_name(ours: str, tiers: tuple[str, ...], raw: RawTable, taken: set[str]) 
     free = [header for header in raw.columns if header not in taken]
     forms = {header: _forms(header) for header in free}
     for tier in tiers:
-        names = {plain(name) for name in tier.split()}
+        names = {plain(name): k for k, name in enumerate(tier.split())}
         for depth in range(3):
             found = [h for h in free if len(forms[h]) > depth and forms[h][depth] in names]
-            if len(found) > 1 and not _equal_cells(raw, found):
+            if ours in DESCRIPTIVE:
+                found.sort(key=lambda h, depth=depth: names[forms[h][depth]])  # type: ignore[misc]
+            elif len(found) > 1 and not _equal_cells(raw, found):
                 raise DataError(
                     _(
                         "columns {rivals} could each be {table}.{ours}; the file's columns are: {columns}."
@@ -134,7 +137,7 @@ def _by_name(ours: str, tiers: tuple[str, ...], raw: RawTable, taken: set[str]) 
                     ),
                     place=raw.file,
                     remedy=_("Say which one with --match {table}.{ours}={rival}.").format(
-                        table=raw.name, ours=ours, rival=found[0]
+                        table=raw.name, ours=ours, rival=shlex.quote(found[0])
                     ),
                 )
             if found:

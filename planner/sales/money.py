@@ -55,6 +55,11 @@ class Exact:
             amounts = amounts.astype(object)
         return Decimal(int((amounts * counts[different]).sum())).scaleb(-self.scale)
 
+    def has_fractions(self) -> bool:
+        """Whether some amount is not a whole number."""
+        whole: Any = self.minor
+        return self.scale > 0 and bool((whole % 10**self.scale != 0).any())
+
     def rows(self) -> NDArray[np.generic]:
         """The amount of every row in minor units."""
         return self.minor[self.codes]

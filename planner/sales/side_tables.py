@@ -120,8 +120,9 @@ def note_unreadable(table: Matched, ours: str, bad: Bools, ledger: Ledger) -> No
 def read_shoppers(
     table: Matched, axes: Axes, calendar: Calendar, opened: Bools, units: Floats, ledger: Ledger
 ) -> tuple[Floats | None, list[str]]:
-    """(shoppers (S, W) or None when no row is usable, notes).  units (S, W): category units, to fill stores without a count.
+    """(shoppers (S, W) or None when no row is usable, notes).
 
+    units (S, W): category units, to fill stores without a count.
     Days are added up; a missing week takes the store's median; a store without any count takes its
     units times the chain's shoppers per unit.
     """
@@ -133,13 +134,20 @@ def read_shoppers(
     store = _positions(axes.stores, axes.store, table, "store")
     week = days.week - axes.start
     use = (store >= 0) & (week >= 0) & (week < axes.n_weeks) & ~days.bad & ~days.blank
-    use &= np.nan_to_num(numbers.values) > 0.0
+    repeated = table.raw.repeats()
+    use &= (np.nan_to_num(numbers.values) > 0.0) & ~repeated
     found = np.full((axes.n_stores, axes.n_weeks), np.nan)
     if use.any():
         sums = pd.Series(numbers.values[use]).groupby([store[use], week[use]]).sum()
         at = np.array(sums.index.tolist(), dtype=np.int64)
         found[at[:, 0], at[:, 1]] = sums.to_numpy()
     notes: list[str] = []
+    if repeated.any():
+        notes.append(
+            _("{n} rows of {file} repeat an earlier row exactly and are left out.").format(
+                n=int(repeated.sum()), file=table.raw.file
+            )
+        )
     wanted = opened & np.isnan(found)
     counted = ~np.isnan(found).all(axis=1)
     both = counted[:, None] & opened & (units > 0.0)

@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import warnings
 import zipfile
 from datetime import date, datetime, time
 from pathlib import Path
+from typing import Any
 
 import openpyxl
 from openpyxl.utils.exceptions import InvalidFileException
@@ -19,7 +21,10 @@ def read_sheet(path: Path, name: str) -> tuple[list[str], list[list[str]], list[
     The sheet called like the table ("sales"), else the first one that holds something.
     """
     try:
-        book = openpyxl.load_workbook(path, read_only=True, data_only=True)
+        with warnings.catch_warnings():
+            # Styles and validations that cannot be kept do not matter to a reader.
+            warnings.simplefilter("ignore", UserWarning)
+            book = openpyxl.load_workbook(path, read_only=True, data_only=True)
     except (InvalidFileException, zipfile.BadZipFile, KeyError, ValueError, OSError) as error:
         raise DataError(
             _("this workbook cannot be opened ({why}); it may be damaged or protected.").format(why=error),
@@ -41,11 +46,13 @@ def read_sheet(path: Path, name: str) -> tuple[list[str], list[list[str]], list[
     )
 
 
-def _rows(sheet: object, path: Path) -> tuple[list[str], list[list[str]], list[int]] | None:
+def _rows(sheet: Any, path: Path) -> tuple[list[str], list[list[str]], list[int]] | None:
     headers: list[str] = []
     rows: list[list[str]] = []
     numbers: list[int] = []
-    for number, values in enumerate(sheet.iter_rows(values_only=True), start=1):  # type: ignore[attr-defined]
+    # Some exporters write a wrong size of the sheet; without it every row is read.
+    sheet.reset_dimensions()
+    for number, values in enumerate(sheet.iter_rows(values_only=True), start=1):
         cells = [_text(value) for value in values]
         if not any(cells):
             continue

@@ -113,6 +113,18 @@ def test_rivals_with_equal_cells_are_no_question() -> None:
     assert match(table, LoadRequest(Path("s"), Path("i"))).names["units"] == "qty"
 
 
+def test_describing_columns_are_no_question() -> None:
+    found = _match("stores", ["store_no", "area", "region", "store_format", "cluster"])
+    assert found == {"store": "store_no", "region": "region", "cluster": "cluster"}
+    found = _match("items", ["sku", "product_name", "description", "segment", "Sub Category"])
+    assert (found["description"], found["segment"]) == ("description", "segment")
+
+
+def test_names_with_spaces_are_quoted_in_the_remedy() -> None:
+    with pytest.raises(DataError, match=r"--match sales\.units='Sales Qty'"):
+        _match("sales", ["store", "week", "sku", "Sales Qty", "units", "turnover"])
+
+
 def test_overrides() -> None:
     headers = ["A", "B", "C", "D", "E"]
     said = [("sales", ours, theirs) for ours, theirs in zip(SALES, headers, strict=True)]

@@ -176,6 +176,7 @@ def test_price_instead_of_revenue_is_exact(tmp_path: Path) -> None:
     loaded = load_rows(tmp_path, rows)
     assert loaded.report.money_read == Decimal("0.333") * Decimal("10.07") * 10
     assert loaded.panel.units[0, 0] == pytest.approx(0.333)
+    assert any("weighed" in note for note in loaded.report.notes)
 
 
 def test_blank_revenue_takes_the_price(tmp_path: Path) -> None:

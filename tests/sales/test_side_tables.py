@@ -131,6 +131,7 @@ def test_shoppers(tmp_path: Path) -> None:
         for w in range(20)
     ]
     shoppers[3]["footfall"] = ""
+    shoppers.append(dict(shoppers[0]))
     loaded = load_rows(tmp_path, shoppers=shoppers, baseline_weeks=10)
     panel = loaded.panel
     assert panel.shoppers is not None
@@ -166,7 +167,7 @@ def _offer(code: str, **more: object) -> Row:
 
 
 def test_offers_stand_last(tmp_path: Path) -> None:
-    offers = [_offer("0900", clusters="Coast"), _offer("0001", clusters="all"), _offer("0011")]
+    offers = [_offer("0900", clusters="coast; Moon"), _offer("0001", clusters="all"), _offer("0011")]
     offers.append(_offer("0902", segment=""))
     loaded = load_rows(tmp_path, items=_items(unit_cost=1), stores=_stores(), offers=offers)
     items = loaded.catalogue.items
@@ -174,6 +175,7 @@ def test_offers_stand_last(tmp_path: Path) -> None:
     assert [item.is_offer for item in items] == [False] * 4 + [True] * 2
     assert items[4].offered_to == ("Coast",)
     assert items[5].offered_to == ()
+    assert any("0900 names Moon" in note for note in loaded.report.notes)
     assert (items[4].price, items[4].cost) == (2.8, 1.2)
     assert not loaded.panel.listed[:, 4:].any()
     assert not loaded.base.today[:, 4:].any()
