@@ -13,15 +13,17 @@ class RangewrightError(Exception):
     problem: what is wrong, with the offending value and the limit or expectation.
     place:   where (file, row, column, item, cluster ...); may be empty.
     remedy:  what the user can do about it; may be empty.
+    report:  for an unexpected error of the program: its lines, to be sent to whoever looks after it.
     """
 
     exit_code = 1
 
-    def __init__(self, problem: str, *, place: str = "", remedy: str = "") -> None:
+    def __init__(self, problem: str, *, place: str = "", remedy: str = "", report: str = "") -> None:
         super().__init__(problem, place, remedy)
         self.problem = problem
         self.place = place
         self.remedy = remedy
+        self.report = report
 
     def __str__(self) -> str:
         head = f"{self.place}: {self.problem}" if self.place else self.problem
@@ -29,11 +31,13 @@ class RangewrightError(Exception):
 
     def __reduce__(self) -> tuple[object, ...]:
         # Keyword-only fields need help to survive the pipe of a child process.
-        return _rebuild, (type(self), self.problem, self.place, self.remedy)
+        return _rebuild, (type(self), self.problem, self.place, self.remedy, self.report)
 
 
-def _rebuild(kind: type[RangewrightError], problem: str, place: str, remedy: str) -> RangewrightError:
-    return kind(problem, place=place, remedy=remedy)
+def _rebuild(
+    kind: type[RangewrightError], problem: str, place: str, remedy: str, report: str
+) -> RangewrightError:
+    return kind(problem, place=place, remedy=remedy, report=report)
 
 
 class CallError(RangewrightError):
@@ -57,7 +61,7 @@ class FitError(DataError):
 
 
 class LimitsError(RangewrightError):
-    """No assortment meets the limits; ``clashing`` names them (exit 4)."""
+    """No assortment meets the limits; the problem names those that clash (exit 4)."""
 
     exit_code = 4
 

@@ -6,9 +6,7 @@ import gettext
 
 from planner.base.paths import resources_folder
 
-_catalogue = gettext.translation(
-    "rangewright", localedir=str(resources_folder() / "locale"), fallback=True
-)
+_catalogue = gettext.translation("rangewright", localedir=str(resources_folder() / "locale"), fallback=True)
 
 _ = _catalogue.gettext
 ngettext = _catalogue.ngettext

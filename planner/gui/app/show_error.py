@@ -29,6 +29,8 @@ def show_error(parent: QWidget | None, error: BaseException) -> QMessageBox:
         if error.remedy:
             parts.append(_("What to do: {remedy}").format(remedy=error.remedy))
         box.setInformativeText("\n\n".join(parts))
+        if error.report:
+            box.setDetailedText(error.report)
     else:
         box.setText(_("Something went wrong inside the program: {error}").format(error=error))
         box.setInformativeText(
