@@ -25,7 +25,7 @@ _LINE = Border(bottom=Side(style="thin", color="8C8C88"))
 _MOST_TEXT = 32_767
 _RISKY = ("=", "+", "-", "@")
 # A column is as wide as its longest entry, between these, in signs.
-_NARROW, _WIDE = 8.0, 46.0
+_NARROW, _WIDE = 9.0, 46.0
 _LINE_HEIGHT = 15.0
 # Bold signs are wider.
 _BOLD = 1.12
@@ -50,7 +50,7 @@ class Place:
 
     def letter(self, key: str) -> str:
         """Column letter of a key."""
-        return get_column_letter(self.columns[key])
+        return str(get_column_letter(self.columns[key]))
 
 
 def safe_text(text: str) -> str:
@@ -76,10 +76,11 @@ def font(bold: bool = False, size: float = 11.0, faint: bool = False) -> Font:
 def number_format(column: Column, signed: bool = False) -> str:
     """The cell format of a column of numbers; ``signed``: gains with a plus."""
     decimals = 0 if column.kind == "count" else column.decimals
-    body: str = ("0" if column.kind == "percent" else "#,##0") + ("." + "0" * decimals if decimals else "")
-    if column.kind == "percent":
-        body += "%"
-    return f"+{body};-{body};{body}" if signed else body
+    part = column.kind == "percent"
+    body = ("0" if part else "#,##0") + ("." + "0" * decimals if decimals else "") + ("%" if part else "")
+    # What rounds to zero has no sign.
+    least = f"{0.5 * 10.0 ** -(decimals + 2 * part):.{decimals + 2 * part + 1}f}"
+    return f"[>={least}]+{body};[<=-{least}]-{body};{body}" if signed else body
 
 
 def put_value(cell: Cell, value: object, column: Column, signed: bool = False) -> None:
@@ -168,7 +169,7 @@ class SheetWriter:
         return Place(header, header + 1, header + table.n_rows, numbers)
 
     def _fill(self, column: Column, position: int, first: int, mark: Sequence[bool], signed: bool) -> None:
-        longest = max((_BOLD * len(word) for word in column_title(column).split()), default=0.0)
+        longest = max((_BOLD * len(word) + 1.0 for word in column_title(column).split()), default=0.0)
         words = column.kind in ("text", "flag")
         side = "left" if words else "right"
         alignment = Alignment(wrap_text=words, vertical="top", horizontal=side, indent=int(words))
@@ -228,9 +229,9 @@ class SheetWriter:
         """Lines of text that every row needs, where more than one may be."""
         lines: dict[int, int] = {}
         for row, position, signs in self._wrapped:
-            room = self._widths.get(position, _NARROW) - 2.0
+            room = self._widths.get(position, _NARROW) - 1.2
             lines[row] = max(lines.get(row, 1), math.ceil(signs / room))
         for row, columns, signs in self._long:
             room = sum(self._widths.get(position, _NARROW) for position in range(1, columns + 1))
-            lines[row] = max(lines.get(row, 1), math.ceil(1.02 * signs / room))
+            lines[row] = max(lines.get(row, 1), math.ceil(0.95 * signs / room))
         return lines

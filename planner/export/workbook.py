@@ -160,7 +160,7 @@ def _summary(review: _Review, out: SheetWriter) -> list[Table]:
     keys = table.column("key").values
     rows = [k for k, key in enumerate(keys) if key != "margin" or review.margin_told]
     table = _without(_picked(table, rows), frozenset({"key"}))
-    table = replace(table, notes=table.notes if review.margin_told else table.notes[:1])
+    table = replace(table, notes=table.notes if review.with_costs else table.notes[:1])
     place = out.table(table)
     for row in range(place.first, place.last + 1):
         # Counts among figures of money.
@@ -183,7 +183,7 @@ def _summary(review: _Review, out: SheetWriter) -> list[Table]:
     _picture(out.sheet, _summary_picture(review), f"A{out.row}", 680)
     out.widen(1, 30.0)
     for position in range(2, 10):
-        out.widen(position, 11.5)
+        out.widen(position, 14.0)
     return [table, counts]
 
 
@@ -193,7 +193,7 @@ def _made_words(review: _Review) -> str:
         "Made {created}. History: {weeks} weeks from {first}, {stores} stores, {items} items; offered: "
         "{offers}."
     ).format(
-        created=plan.created.replace("T", " "),
+        created=_moment(plan.created).strftime("%Y-%m-%d %H:%M"),
         weeks=len(loaded.panel.weeks),
         first=loaded.panel.weeks[0].isoformat() if loaded.panel.weeks else "-",
         stores=len(loaded.catalogue.stores),
@@ -239,7 +239,7 @@ def _items(review: _Review, out: SheetWriter) -> list[Table]:
     clusters = table.column("cluster").values
     ends = [place.first + k for k in range(len(clusters) - 1) if clusters[k] != clusters[k + 1]]
     out.break_pages(ends)
-    out.narrow(place.columns["description"], 34.0)
+    out.narrow(place.columns["description"], 42.0)
     out.narrow(place.columns["reason"], 30.0)
     return [table]
 
@@ -260,7 +260,7 @@ def _where(review: _Review, out: SheetWriter) -> list[Table]:
     table = replace(table, columns=(named, *table.columns[1:]))
     place = out.table(table, mark=[value in ("changed", "leaves") for value in kind.values])
     out.filter_and_freeze(place, left=3)
-    out.narrow(place.columns["description"], 36.0)
+    out.narrow(place.columns["description"], 42.0)
     rows = largest_rows(review.receivers, ("changed", "item", "leaves"), _CHART_ROWS)
     if rows:
         _chart(review, out, rows)
@@ -286,6 +286,8 @@ def _chart(review: _Review, out: SheetWriter, rows: list[int]) -> None:
             number("above", _("Up to the upper end"), np.maximum(high - change, 0.0), decimals),
         ),
     )
+    # The chart is not cut by a page's end.
+    out.break_pages([out.row])
     out.heading(_("The largest changes as a chart"))
     top = out.row
     # A row is about 0.53 cm high.
@@ -305,7 +307,7 @@ def _bench(review: _Review, out: SheetWriter) -> list[Table]:
     table = _without(table, left_out if review.margin_told else left_out | _COSTLY)
     place = out.table(table)
     out.filter_and_freeze(place, left=3)
-    out.narrow(place.columns["description"], 34.0)
+    out.narrow(place.columns["description"], 39.0)
     return [table]
 
 
@@ -336,7 +338,7 @@ def _sales(review: _Review, out: SheetWriter) -> list[Table]:
     reconciliation = reconciliation_table(report)
     out.table(reconciliation)
     out.heading(_("Checks of the rows"))
-    checks = checks_table(report)
+    checks = checks_table(report, examples=1)
     codes = checks.column("code").values
     rows = [k for k, code in enumerate(codes) if review.with_costs or code not in _COSTLY_CHECKS]
     checks = _without(_picked(checks, rows), frozenset({"code"}))

@@ -36,7 +36,7 @@ def receivers_figure(table: Table, most: int = 14) -> Figure:
         _("{name} (changed)").format(name=name) if what == "changed" else name
         for name, what in zip(names, kind, strict=True)
     ]
-    figure = new_figure(7.2, max(2.2, 0.9 + 0.27 * len(rows)))
+    figure = new_figure(7.2, max(2.2, 0.9 + 0.26 * len(rows)))
     axes = figure.add_subplot()
     places = list(range(len(rows)))
     bars = axes.barh(

@@ -64,6 +64,6 @@ def ladder_table(loaded: LoadedData, rungs: Sequence[PlanRung]) -> Table:
         ),
         (
             _("Value: the estimate's, in the unit of the goal, less the cost of changes where one was set."),
-            _("The estimate's own uncertainty is larger than the gap; see the interval of the summary."),
+            _("The gap is the search's alone; the estimate's own uncertainty is the interval of the tally."),
         ),
     )

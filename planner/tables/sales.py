@@ -53,16 +53,19 @@ def reconciliation_table(report: LoadReport) -> Table:
     )
 
 
-def _example(check: Check) -> str:
+def _example(check: Check, most: int | None) -> str:
     places = []
-    for file, row, text in check.examples:
+    for file, row, text in check.examples[:most]:
         place = _("{file} row {row}").format(file=file, row=row) if row > 0 else file
         places.append(_("{place}: {text}").format(place=place, text=text) if text else place)
     return "; ".join(places)
 
 
-def checks_table(report: LoadReport) -> Table:
-    """Every check that found something: count, money, what was done, first rows as examples."""
+def checks_table(report: LoadReport, examples: int | None = None) -> Table:
+    """Every check that found something: count, money, what was done, first rows as examples.
+
+    examples: how many of each, None for all that were kept.
+    """
     checks = report.checks
     return Table(
         "checks",
@@ -80,7 +83,7 @@ def checks_table(report: LoadReport) -> Table:
             ),
             Column("set_aside", _("Set aside"), "flag", tuple(c.set_aside for c in checks)),
             Column("treatment", _("What was done"), "text", tuple(c.treatment for c in checks)),
-            Column("examples", _("Examples"), "text", tuple(_example(c) for c in checks)),
+            Column("examples", _("Examples"), "text", tuple(_example(c, examples) for c in checks)),
             Column("code", _("Code"), "text", tuple(c.code for c in checks)),
         ),
         () if checks else (_("No check found anything."),),

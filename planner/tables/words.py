@@ -237,7 +237,7 @@ def _prices(loaded: LoadedData, fitted: FittedModel) -> list[str]:
     said = _(
         "A price rise of 1 % on one item alone is estimated to change its own units by {own}; on all items "
         "at once, the category's units by {every} (80 % interval {span})."
-    ).format(own=percent(own, 1, True), every=percent(every, 1, True), span=percent_span(low, high, 1))
+    ).format(own=percent(own, 2, True), every=percent(every, 2, True), span=percent_span(low, high, 2))
     if own > 0.0:
         said += " " + _("A rise that sells more is not believable: do not use these price effects.")
     return [said]
