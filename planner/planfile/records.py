@@ -48,44 +48,67 @@ RECORDS: dict[str, type] = {
 Json = object
 
 
-def _fields(kind: type) -> tuple[tuple[str, object, bool], ...]:
-    """(name, type, has a default) of every field that the constructor takes."""
+Test = Callable[[object], bool]
+
+
+def _whole_number(value: object) -> bool:
+    return isinstance(value, int) and not isinstance(value, bool)
+
+
+def _amount(value: object) -> bool:
+    return isinstance(value, int | float) and not isinstance(value, bool)
+
+
+def _day(value: object) -> bool:
+    return isinstance(value, date) and not isinstance(value, datetime)
+
+
+def _numbers(value: object) -> bool:
+    return isinstance(value, np.ndarray) and value.dtype.kind in "biuf"
+
+
+def type_test(hint: object) -> Test:
+    """A test whether a value is of the type that a field declares."""
+    simple: dict[object, Test] = {int: _whole_number, float: _amount, date: _day}
+    if isinstance(hint, type) and hint in simple:
+        return simple[hint]
+    if hint is None or hint is type(None):
+        return lambda value: value is None
+    origin, arguments = typing.get_origin(hint), typing.get_args(hint)
+    if origin is np.ndarray:
+        return _numbers
+    if origin in (types.UnionType, typing.Union):
+        either = tuple(map(type_test, arguments))
+        return lambda value: any(test(value) for test in either)
+    if origin is tuple and len(arguments) == 2 and arguments[1] is Ellipsis:
+        each = type_test(arguments[0])
+        return lambda value: isinstance(value, tuple) and all(map(each, value))
+    if origin is tuple:
+        tests = tuple(map(type_test, arguments))
+        return lambda value: (
+            isinstance(value, tuple)
+            and len(value) == len(tests)
+            and all(test(one) for test, one in zip(tests, value, strict=True))
+        )
+    if isinstance(hint, type):
+        return lambda value: isinstance(value, hint)
+    raise TypeError(f"fields of type {hint} are not kept in a plan file")
+
+
+def _fields(kind: type) -> tuple[tuple[str, Test, bool], ...]:
+    """(name, test of the type, has a default) of every field that the constructor takes."""
     hints = typing.get_type_hints(kind)
     found = []
     for field in dataclasses.fields(kind):
         if field.init:
             given = field.default is not dataclasses.MISSING
             given = given or field.default_factory is not dataclasses.MISSING
-            found.append((field.name, hints[field.name], given))
+            found.append((field.name, type_test(hints[field.name]), given))
     return tuple(found)
 
 
-# (name, type, has a default) of the fields of every record.
+# Of every record that a plan file holds.
 _FIELDS = {kind: _fields(kind) for kind in RECORDS.values()}
-
-
-def conforms(value: object, hint: object) -> bool:
-    """Whether a value is of the type its field declares."""
-    origin, arguments = typing.get_origin(hint), typing.get_args(hint)
-    if hint is None or hint is type(None):
-        return value is None
-    if origin in (types.UnionType, typing.Union):
-        return any(conforms(value, one) for one in arguments)
-    if origin is tuple:
-        if not isinstance(value, tuple):
-            return False
-        if len(arguments) == 2 and arguments[1] is Ellipsis:
-            return all(conforms(one, arguments[0]) for one in value)
-        return len(value) == len(arguments) and all(map(conforms, value, arguments))
-    if origin is np.ndarray:
-        return isinstance(value, np.ndarray) and value.dtype.kind in "biuf"
-    if hint is float:
-        return isinstance(value, int | float) and not isinstance(value, bool)
-    if hint is int:
-        return isinstance(value, int) and not isinstance(value, bool)
-    if hint is date:
-        return isinstance(value, date) and not isinstance(value, datetime)
-    return isinstance(value, hint) if isinstance(hint, type) else False
 
 
 # -- writing -----------------------------------------------------------------------------------
@@ -99,6 +122,8 @@ class Writer:
 
     def write(self, value: object) -> Json:
         """JSON of one value.  Raises TypeError for what a plan file does not keep."""
+        if type(value) in _AS_THEY_ARE:
+            return value
         if isinstance(value, np.generic):
             value = value.item()
         if value is None or isinstance(value, bool | int | str):
@@ -133,11 +158,11 @@ class Writer:
 
     def _record(self, value: object) -> dict[str, Json]:
         written = {}
-        for name, hint, _given in _FIELDS[type(value)]:
+        for name, fits, _given in _FIELDS[type(value)]:
             one = getattr(value, name)
             plain = one.item() if isinstance(one, np.generic) else one
-            if not conforms(plain, hint):
-                raise TypeError(f"{type(value).__name__}.{name} holds {type(one).__name__}, not {hint}")
+            if not fits(plain):
+                raise TypeError(f"{type(value).__name__}.{name} holds a value of another kind: {one!r:.80}")
             written[name] = self.write(plain)
         return written
 
@@ -148,6 +173,9 @@ class Writer:
             columns = {name: [row[name] for row in written] for name in written[0]}
             return {"$rs": type(values[0]).__name__, "n": len(values), "f": columns}
         return [self.write(value) for value in values]
+
+
+_AS_THEY_ARE = frozenset({type(None), bool, int, str})
 
 
 # -- reading -----------------------------------------------------------------------------------
@@ -248,9 +276,9 @@ class Reader:
     def _build(self, kind: type, values: dict[str, object]) -> object:
         """A record; fields that this version does not know are dropped, missing ones take their default."""
         given = {}
-        for name, hint, has_default in _FIELDS[kind]:
+        for name, fits, has_default in _FIELDS[kind]:
             if name in values:
-                if not conforms(values[name], hint):
+                if not fits(values[name]):
                     raise Damage(f"{kind.__name__}.{name} holds a value of another kind")
                 given[name] = values[name]
             elif not has_default:

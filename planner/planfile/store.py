@@ -14,7 +14,7 @@ from planner.plan.plans import NamedPlan, States
 from planner.planfile.contents import PlanContents
 from planner.planfile.damage import Damage, FileLimits
 from planner.planfile.database import check_identity, read_database, write_database
-from planner.planfile.records import Reader, Writer, conforms
+from planner.planfile.records import Reader, Writer, type_test
 from planner.planfile.shapes import check_shapes, refuse_unfit
 from planner.sales.report import LoadedData
 
@@ -72,7 +72,7 @@ def load(path: Path, limits: FileLimits | None = None) -> PlanContents:
 
 def _contents(values: dict[str, object]) -> PlanContents:
     for name, hint in _PARTS.items():
-        if name in values and not conforms(values[name], hint):
+        if name in values and not type_test(hint)(values[name]):
             raise Damage(f"{name} holds a value of another kind")
     settings = values.get("settings", {})
     if not isinstance(settings, dict) or not all(isinstance(key, str) for key in settings):
