@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -55,17 +55,35 @@ def interval(draws: Floats, level: float = 0.8, axis: int = 0) -> tuple[Floats, 
     return low, high
 
 
-def by_cluster(units: Floats, cluster: Ints, n_clusters: int) -> Floats:
-    """Sum over the stores of each cluster: (K, S, J) -> (K, C, J)."""
-    membership = np.zeros((n_clusters, cluster.size))
-    membership[cluster, np.arange(cluster.size)] = 1.0
-    summed: Floats = np.matmul(membership, units)
-    return summed
+def _of_stores(demand: StoreDemand, stores: Ints) -> StoreDemand:
+    """The demand of some stores only."""
+    shoppers = None if demand.shoppers is None else demand.shoppers[stores]
+    return replace(demand, scale=demand.scale[:, stores], cluster=demand.cluster[stores], shoppers=shoppers)
 
 
 def units_by_cluster(demand: StoreDemand, present: Bools) -> Floats:
-    """Units per week (K, C, J) of every draw when ``present`` (S, J) is on the shelf."""
-    return by_cluster(demand.units(present), demand.cluster, demand.attraction.shape[1])
+    """Units per week (K, C, J) of every draw when ``present`` (S, J) is on the shelf.
+
+    The sum over a cluster's stores of StoreDemand.units, without the (K, S, J) array: stores of a
+    cluster share v, so that D (K, S, G) and the units per attraction are matrix products.
+    """
+    n_draws, n_clusters, n_items = demand.attraction.shape
+    membership = demand.segment[:, None] == np.arange(demand.dissimilarity.shape[1])[None, :]
+    power = demand.power()[:, None, :]
+    units = np.empty((n_draws, n_clusters, n_items))
+    for c in range(n_clusters):
+        stores = np.flatnonzero(demand.cluster == c)
+        shelf = present[stores].astype(np.float64).T[:, :, None] * membership[:, None, :]
+        flat = shelf.reshape(n_items, -1)
+        attraction = np.ascontiguousarray(demand.attraction[:, c])
+        total = (attraction @ flat).reshape(n_draws, stores.size, -1)
+        level = np.where(total > 0.0, np.exp(power * np.log(np.where(total > 0.0, total, 1.0))), 0.0)
+        inclusive = level.sum(axis=2)
+        category = _of_stores(demand, stores).category_of(inclusive)
+        rate = category / np.where(inclusive > 0.0, inclusive, 1.0)
+        per_attraction = rate[:, :, None] * level / np.where(total > 0.0, total, 1.0)
+        units[:, c] = attraction * (per_attraction.reshape(n_draws, -1) @ flat.T)
+    return units
 
 
 def what_if(fitted: FittedModel, before: Bools, after: Bools, price_ratio: Floats | None = None) -> WhatIf:
