@@ -21,8 +21,10 @@ Ints = NDArray[np.int64]
 
 # So many whole plans are simply valued.
 _FEW_PLANS = 60_000
-_REDUCE_ROUNDS = 4
-_ROOT_ROUNDS = 12
+_REDUCE_ROUNDS = 6
+_ROOT_ROUNDS = 15
+# Ranges are sought at the root, and wherever pricing all combinations is cheap.
+_SHORT_LISTS = 20_000
 _RANGE_TOLERANCE = 1e-2
 
 
@@ -60,6 +62,7 @@ class ClusterSearch:
         self._heap: list[tuple[float, int, _Node]] = []
         self._counter = itertools.count()
         self._closed = -np.inf
+        self._in_work = -np.inf
         self._blocks = blocks
         # Until the root is bounded: a bound that needs no list of combinations.
         self._unopened: float | None = min(known_bound, coarse_bound(model))
@@ -94,7 +97,7 @@ class ClusterSearch:
         if self._unopened is not None:
             return max(self._unopened, self.value)
         open_bound = -self._heap[0][0] if self._heap else -np.inf
-        return max(self.value, self._closed, open_bound)
+        return max(self.value, self._closed, open_bound, self._in_work)
 
     @property
     def done(self) -> bool:
@@ -119,14 +122,13 @@ class ClusterSearch:
                 return
         _key, _n, node = heapq.heappop(self._heap)
         self.nodes += 1
+        # Others may read the bound while this node is off the heap.
+        self._in_work = node.bound
         survivor = self._reduced(node)
-        if survivor is None:
-            return
-        if self.stopped():
-            self._push(survivor)
-            return
-        for child in self._children(survivor):
-            self._push(child)
+        if survivor is not None:
+            for child in [survivor] if self.stopped() else self._children(survivor):
+                self._push(child)
+        self._in_work = -np.inf
 
     def _close(self, bound: float) -> None:
         """Keep the bound of what needs no more work."""
@@ -134,7 +136,8 @@ class ClusterSearch:
 
     def _reduced(self, node: _Node) -> _Node | None:
         """Bound a node again and again while combinations drop out; None when it is closed."""
-        rounds = _ROOT_ROUNDS if self.nodes == 1 else _REDUCE_ROUNDS
+        root = self.nodes == 1
+        rounds = _ROOT_ROUNDS if root else _REDUCE_ROUNDS
         for _number in range(rounds):
             if self.stopped():
                 break
@@ -156,10 +159,15 @@ class ClusterSearch:
             node.blocks = self._surviving(node, found)
             if any(block.size == 0 for block in node.blocks):
                 return None
-            if self.nodes == 1:
-                node.box = self._ranges(node)
             after = sum(block.size for block in node.blocks)
-            if after > 0.8 * before and old - node.bound < 0.2 * (node.bound - self.target):
+            width = float((box.high - box.low).sum())
+            if root or after <= _SHORT_LISTS:
+                node.box = self._ranges(node)
+                narrow = float((node.box.high - node.box.low).sum())
+            else:
+                narrow = width
+            gained = old - node.bound > 0.1 * (node.bound - self.target)
+            if after > 0.8 * before and narrow > 0.97 * width and not gained:
                 break
         return node
 

@@ -63,7 +63,7 @@ class Bound:
     """
 
     value: float
-    reduced: list[Floats]
+    reduced: list[NDArray[np.float32]]
     tops: list[float]
     chosen: list[dict[int, float]]
 
@@ -143,7 +143,7 @@ def _k_lines(
     return lines
 
 
-def priced(block: Block, price: Floats) -> tuple[Floats, float]:
+def priced(block: Block, price: Floats) -> tuple[NDArray[np.float32], float]:
     """Upper bounds (n,) on terms x price, and the exact largest of terms x price.
 
     Single precision finds the candidates; its error is at most a few units in the last place of
@@ -154,7 +154,7 @@ def priced(block: Block, price: Floats) -> tuple[Floats, float]:
     top = float(rough.max())
     candidates = np.flatnonzero(rough >= top - 2.0 * error)
     best = float((price @ block.terms[:, candidates]).max())
-    return rough.astype(np.float64) + error, best
+    return rough + np.float32(error), best
 
 
 class Relaxation:
@@ -271,7 +271,7 @@ class Relaxation:
         self.objective, self.cost_weight = objective, 0.0
         self.program.set_costs(np.concatenate([objective, self.penalty, np.zeros(len(self.columns))]))
 
-    def _recomputed(self, dual: Floats) -> tuple[float, list[Floats], list[float]]:
+    def _recomputed(self, dual: Floats) -> tuple[float, list[NDArray[np.float32]], list[float]]:
         """A valid bound from any duals: signs clipped, boxes and best combinations put in."""
         y = dual.copy()
         inequality = slice(self.rows["cut"], self.rows["block"])
@@ -319,11 +319,12 @@ class Relaxation:
             duals = answer.dual[self.rows["block"] : self.rows["floor"]]
             excess, scale = 0.0, 1e-9 * max(1.0, abs(answer.value))
             for g, gain in enumerate(reduced):
-                over = gain - duals[g]
                 excess += max(tops[g] - float(duals[g]), 0.0)
-                take = min(_COLUMNS_PER_ROUND, over.size)
-                picks = np.argpartition(-over, take - 1)[:take]
-                self.add(g, picks[over[picks] > scale])
+                picks = np.flatnonzero(gain > duals[g] + scale)
+                if picks.size > _COLUMNS_PER_ROUND:
+                    last = picks.size - _COLUMNS_PER_ROUND
+                    picks = picks[np.argpartition(gain[picks], last)[last:]]
+                self.add(g, picks)
             if best <= stop_below or excess <= tolerance * max(1.0, abs(answer.value)):
                 break
         if kept is None:

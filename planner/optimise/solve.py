@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable
+from concurrent.futures import FIRST_COMPLETED, Future, ThreadPoolExecutor, wait
 from dataclasses import replace
 
 import numpy as np
@@ -30,6 +31,7 @@ from planner.optimise.verify import RawProblem, broken_limits, plan_value
 Floats = NDArray[np.float64]
 
 _REPORT_SECONDS = 0.3
+_AT_ONCE = 2
 
 
 class _Cluster:
@@ -171,15 +173,30 @@ class _Run:
             better = cluster.best_start(None, [search.states], self.settings.starts - 1, seconds)
             if better is not None:
                 search.offer(better)
-        while not self.stopped():
-            value, bound = sum(s.value for s in searches), sum(s.bound for s in searches)
-            self.show(value, bound, np.stack([s.states for s in searches]))
-            open_ones = [s for s in searches if not s.done]
-            if bound - value <= self.settings.gap * abs(value) or not open_ones:
-                break
-            max(open_ones, key=lambda s: s.bound - s.value).step()
-            self.iterations += 1
+        self._together(searches)
         return np.stack([s.states for s in searches]), sum(s.bound for s in searches), ()
+
+    def _together(self, searches: list[ClusterSearch]) -> None:
+        """Step the searches with the largest gaps until the sum is within the target.
+
+        Two at a time: they share nothing, and the arithmetic runs outside the interpreter's lock.
+        """
+        with ThreadPoolExecutor(_AT_ONCE) as pool:
+            running: dict[int, Future[None]] = {}
+            while True:
+                value, bound = sum(s.value for s in searches), sum(s.bound for s in searches)
+                self.show(value, bound, np.stack([s.states for s in searches]))
+                enough = bound - value <= self.settings.gap * abs(value) or self.stopped()
+                waiting = [k for k, s in enumerate(searches) if k not in running and not s.done]
+                if not running and (enough or not waiting):
+                    return
+                waiting.sort(key=lambda k: searches[k].value - searches[k].bound)
+                for k in [] if enough else waiting[: _AT_ONCE - len(running)]:
+                    running[k] = pool.submit(searches[k].step)
+                    self.iterations += 1
+                wait(running.values(), timeout=_REPORT_SECONDS, return_when=FIRST_COMPLETED)
+                for k in [k for k, work in running.items() if work.done()]:
+                    running.pop(k).result()
 
     # -- at most so many changes -------------------------------------------------------------
 
@@ -204,11 +221,10 @@ class _Run:
             self.show(float(lower[most]), float(upper[most]), self._plan(picks[most]))
             if upper[most] - lower[most] <= self.settings.gap * abs(lower[most]):
                 break
-            cell = self._next_cell(ways[most])
-            if cell is None:
+            cells = self._next_cells(ways[most])
+            if not cells:
                 break
-            cell.step()
-            self.iterations += 1
+            self._step_all(cells, float(lower[most]), float(upper[most]), self._plan(picks[most]))
         lower, picks = self._allocation(most, value=True)
         upper, _ways = self._allocation(most, value=False)
         rungs = tuple(
@@ -226,14 +242,26 @@ class _Run:
         for cluster, k in zip(self.clusters, pick, strict=True):
             cluster.price_changes(price, most, cluster.searches[k].states)
 
-    def _next_cell(self, way: tuple[int, ...]) -> ClusterSearch | None:
+    def _step_all(self, cells: list[ClusterSearch], value: float, bound: float, states: States) -> None:
+        """One step of each, side by side, streaming the best so far meanwhile."""
+        with ThreadPoolExecutor(_AT_ONCE) as pool:
+            works = [pool.submit(cell.step) for cell in cells]
+            while not all(work.done() for work in works):
+                wait(works, timeout=_REPORT_SECONDS)
+                self.show(value, bound, states)
+            for work in works:
+                work.result()
+        self.iterations += len(cells)
+
+    def _next_cells(self, way: tuple[int, ...]) -> list[ClusterSearch]:
         """First the priced searches, which bound every rung at once; then the rung's own cells."""
         priced = [search for cluster in self.clusters for _price, search in cluster.priced]
         for searches in (priced, [self.clusters[c].searches[k] for c, k in enumerate(way)]):
             unfinished = [search for search in searches if not search.done]
             if unfinished:
-                return max(unfinished, key=lambda search: search.bound - search.value)
-        return None
+                unfinished.sort(key=lambda search: search.value - search.bound)
+                return unfinished[:_AT_ONCE]
+        return []
 
     def _plan(self, pick: tuple[int, ...]) -> States:
         return np.stack([self.clusters[c].searches[k].states for c, k in enumerate(pick)])
