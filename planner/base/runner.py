@@ -123,12 +123,14 @@ def _work(pipe: Connection, lifeline: Connection, warm: str) -> None:
     signal.signal(signal.SIGINT, signal.SIG_IGN)
     stop = _Stop()
     threading.Thread(target=_listen, args=(lifeline, stop), daemon=True).start()
+    pieces: Iterator[object] = iter(())
     if warm:
         # A job that needs what cannot be imported will say so with its own report.
         with contextlib.suppress(Exception):
-            _function(warm)()
+            pieces = iter(_function(warm)() or ())
     with contextlib.suppress(EOFError, OSError):
         while True:
+            _go_on_warming(pieces, pipe)
             order = pipe.recv()
             progress = _PipeProgress(pipe, stop, order.number)
             answer = _answer(order, progress)
@@ -139,6 +141,18 @@ def _work(pipe: Connection, lifeline: Connection, warm: str) -> None:
                 raise
             except Exception as error:
                 pipe.send(Message("failed", error=_failure(error)))
+
+
+def _go_on_warming(pieces: Iterator[object], pipe: Connection) -> None:
+    """Take further pieces of the warm-up while no job is wanted."""
+    while not pipe.poll():
+        try:
+            next(pieces)
+        except StopIteration:
+            return
+        except Exception:
+            # As above; a generator that failed has no further pieces.
+            return
 
 
 def _answer(order: _Order, progress: _PipeProgress) -> Message:
@@ -190,7 +204,8 @@ def _one_thread_each() -> Iterator[None]:
 class ChildRunner:
     """Runs "package.module:function"(*arguments, progress) in one spawned process, one at a time.
 
-    warm: "package.module:function" called once in a new child, to import the heavy parts early.
+    warm: "package.module:function" called once in a new child, to import the heavy parts early.  When it
+    is a generator, a job that is wanted goes before the pieces that are left.
     Belongs to the thread that made it.  No call waits for the child, except ``close`` and the end
     of a cancelled job, which kill it first.
     """

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import replace
 from datetime import UTC, datetime
 from pathlib import Path
@@ -22,13 +23,18 @@ if TYPE_CHECKING:
     from planner.transfer.delistings import DelistingTransfers
 
 
-def warm_up() -> None:
-    """Import what jobs need; called once in a new child process."""
+def warm_up() -> Iterator[None]:
+    """Import what jobs need, in the order of the work; a job that is wanted meanwhile goes first."""
+    import planner.sales.load
+
+    yield
     import planner.demand.nested
-    import planner.export.workbook
+
+    yield
     import planner.optimise.solve
-    import planner.planfile.store
-    import planner.sales.load  # noqa: F401
+
+    yield
+    import planner.export.workbook  # noqa: F401
 
 
 def warm_window() -> None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import sys
 import time
+from collections.abc import Iterator
 from pathlib import Path
 
 from planner.base.errors import CancelledError, DataError
@@ -17,6 +18,13 @@ FOREVER = 60.0
 def warm() -> None:
     """Leave a mark that ``was_warm`` finds."""
     os.environ["RUNNER_WAS_WARM"] = "yes"
+
+
+def warm_by_pieces() -> Iterator[None]:
+    """Mark each of two pieces."""
+    os.environ["RUNNER_WAS_WARM"] = "first"
+    yield
+    os.environ["RUNNER_WAS_WARM"] = "second"
 
 
 def broken_warm() -> None:

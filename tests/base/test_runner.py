@@ -226,6 +226,19 @@ def test_a_failing_warm_up_does_not_stop_the_work() -> None:
         runner.close()
 
 
+def test_the_warm_up_goes_on_between_jobs() -> None:
+    runner = ChildRunner(target("warm_by_pieces"))
+    try:
+        marks = [run(runner, "surroundings")[-1].result[0]]
+        deadline = time.monotonic() + 30.0
+        while marks[-1] != "second" and time.monotonic() < deadline:
+            marks.append(run(runner, "surroundings")[-1].result[0])
+        assert marks[-1] == "second"
+        assert set(marks) <= {"no", "first", "second"}
+    finally:
+        runner.close()
+
+
 def test_close_leaves_nothing(own: ChildRunner) -> None:
     own.start(target("deaf"), ())
     wait_for(own, "improved")

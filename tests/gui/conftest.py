@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from pathlib import Path
 
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
@@ -12,8 +12,17 @@ import pytest
 from PySide6.QtCore import QLocale, QSettings
 from PySide6.QtGui import QPalette
 from PySide6.QtWidgets import QApplication
+from pytestqt.qtbot import QtBot
 
+from planner.base.paths import demo_folder
+from planner.base.progress import NoProgress
+from planner.demand.fitted import FittedModel
+from planner.gui.app import start
+from planner.gui.app.main_window import MainWindow
 from planner.gui.theme.palettes import dark_palette, light_palette
+from planner.review import engine
+from planner.review.jobs import FitJob
+from planner.sales.report import LoadedData
 
 
 @pytest.fixture(autouse=True)
@@ -35,3 +44,45 @@ def palette(request: pytest.FixtureRequest, qapp: QApplication) -> Iterator[QPal
     qapp.setPalette(chosen)
     yield chosen
     qapp.setPalette(before)
+
+
+@pytest.fixture
+def window(qtbot: QtBot, qapp: QApplication) -> Iterator[MainWindow]:
+    """An empty window; its child process ends with it."""
+    start.make_application(["rangewright"])
+    made = start.make_window()
+    qtbot.addWidget(made, before_close_func=lambda w: w.bridge.review.new())
+    made.show()
+    qtbot.waitExposed(made)
+    yield made
+    made.bridge.close()
+
+
+@pytest.fixture(scope="session")
+def demo() -> LoadedData:
+    """The demo catalogue, loaded once."""
+    return engine.run_load_folder(demo_folder(), NoProgress())
+
+
+@pytest.fixture(scope="session")
+def fit(demo: LoadedData) -> FittedModel:
+    """A plain fit of the demo with few draws: enough for every screen."""
+    return engine.run_fit(FitJob(demo, "nested", draws=60), NoProgress())
+
+
+@pytest.fixture
+def review(window: MainWindow, demo: LoadedData, fit: FittedModel) -> MainWindow:
+    """The window with the demo loaded and fitted."""
+    window.bridge.review.accept_loaded(demo)
+    window.bridge.review.accept_fitted(fit)
+    return window
+
+
+@pytest.fixture
+def wait_idle(qtbot: QtBot) -> Callable[[MainWindow, int], None]:
+    """Wait until no job runs."""
+
+    def wait(made: MainWindow, seconds: int = 60) -> None:
+        qtbot.waitUntil(lambda: made.bridge.idle, timeout=1000 * seconds)
+
+    return wait

@@ -83,6 +83,8 @@ def test_gap_picture_closes_in_and_says_so(qtbot: QtBot, palette: QPalette) -> N
     picture = GapPicture()
     shown(qtbot, picture)
     assert picture.words() == "No run yet."
+    picture.begin()
+    assert picture.words() == "Running; no answer yet."
     picture.add(0.1, math.nan, 1500.0)
     picture.add(0.5, 1000.0, 1400.0, today=900.0)
     picture.add(1.5, 1100.0, 1111.0)

@@ -22,13 +22,15 @@ def show_error(parent: QWidget | None, error: BaseException) -> QMessageBox:
         Qt.TextInteractionFlag.TextSelectableByMouse | Qt.TextInteractionFlag.TextSelectableByKeyboard
     )
     if isinstance(error, RangewrightError):
-        box.setText(error.problem)
+        box.setText(error.problem[:1].upper() + error.problem[1:])
         parts = []
         if error.place:
-            parts.append(_("Where: {place}").format(place=error.place))
+            parts.append(_("Where: {place}.").format(place=error.place.rstrip(".")))
         if error.remedy:
             parts.append(_("What to do: {remedy}").format(remedy=error.remedy))
         box.setInformativeText("\n\n".join(parts))
+        if error.report:
+            box.setDetailedText(error.report)
         if error.report:
             box.setDetailedText(error.report)
     else:

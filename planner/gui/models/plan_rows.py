@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 
 from planner.base.text import _
@@ -57,8 +58,12 @@ def plans_differ(catalogue: Catalogue, first: NamedPlan, other: NamedPlan) -> Ta
     )
 
 
-def plans_in_words(plans: Table) -> Table:
-    """The table "plans" with times, goals and the solver's status as people write them."""
+def plans_in_words(plans: Table, present: str) -> Table:
+    """The table "plans" with times, goals and the solver's status as people write them.
+
+    present: name of the plan in work, which has no time of its own.
+    """
+    names = plans.column("name").values
     goals = {"margin": _("margin"), "sales": _("sales"), "units": _("units")}
     said = {
         "created": lambda value: numbers.moment(str(value)),
@@ -66,9 +71,16 @@ def plans_in_words(plans: Table) -> Table:
         "status": lambda value: status_words(str(value)),
     }
     columns = [
-        replace(column, values=[said[column.key](value) for value in column.values])
+        replace(column, values=_said(column, names, said[column.key], present))
         if column.key in said
         else column
         for column in plans.columns
     ]
     return Table(plans.key, plans.title, tuple(columns), plans.notes)
+
+
+def _said(column: Column, names: Sequence[object], words: Callable[[object], str], present: str) -> list[str]:
+    texts = [words(value) for value in column.values]
+    if column.key != "created":
+        return texts
+    return ["" if name == present else text for name, text in zip(names, texts, strict=True)]

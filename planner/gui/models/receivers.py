@@ -9,6 +9,8 @@ from planner.gui.theme import numbers
 from planner.gui.theme.cells import BarRow
 from planner.tables.table import Table
 
+# A mark beside the name, because colour alone should tell nothing.
+_OWN = "◆"
 # (kinds of rows, heading) in the order shown; sums stand high, so that nobody scrolls for them.
 _SECTIONS = (("changed",), ("leaves", "own label"), ("item",), ("supplier",), ("brand",))
 
@@ -39,13 +41,13 @@ def bar_rows(table: Table) -> tuple[BarRow, ...]:
         inside = [row for row, kind in enumerate(kinds) if kind in section]
         inside.sort(key=lambda row: section.index(kinds[row]))
         if inside:
-            rows.append(BarRow(title, kind="heading", note=change.unit if section == ("changed",) else ""))
+            rows.append(BarRow(title, kind="heading", note=_heading_note(section, change.unit)))
         for row in inside:
             value, bottom, top = _number(change.values[row]), _number(low[row]), _number(high[row])
             own = bool(columns["own_label"][row])
             rows.append(
                 BarRow(
-                    label=_label(kinds[row], str(columns["description"][row])),
+                    label=_label(kinds[row], str(columns["description"][row]), own),
                     value=value,
                     low=bottom,
                     high=top,
@@ -53,7 +55,7 @@ def bar_rows(table: Table) -> tuple[BarRow, ...]:
                     interval=numbers.span(bottom, top, decimals, signed=True),
                     kind=_kind(kinds[row], own),
                     identity=str(columns["item"][row]),
-                    note=_note(kinds[row], own, value),
+                    note=_("own label") if own else "",
                 )
             )
     return tuple(rows)
@@ -67,14 +69,17 @@ def _kind(kind: str, own_label: bool) -> str:
     return "own" if own_label else "item"
 
 
-def _label(kind: str, words: str) -> str:
-    return _("Leaves the category") if kind == "leaves" else words
+def _heading_note(section: tuple[str, ...], unit: str) -> str:
+    """The unit over the first rows, the sign of own label over the items."""
+    if "item" in section:
+        return _("{mark} own label").format(mark=_OWN)
+    return unit if "changed" in section or "leaves" in section else ""
 
 
-def _note(kind: str, own_label: bool, value: float) -> str:
-    if kind == "leaves" and value < 0.0:
-        return _("less than nothing: it grows")
-    return _("own label") if own_label else ""
+def _label(kind: str, words: str, own_label: bool) -> str:
+    if kind == "leaves":
+        return _("Leaves the category")
+    return f"{_OWN} {words}" if own_label else words
 
 
 def caption(table: Table, subject: str, today: bool) -> str:

@@ -285,6 +285,10 @@ class TableModel(QAbstractTableModel):
         """Keys of the shown columns."""
         return tuple(shown.column.key for shown in self._shown)
 
+    def titles_with_contents(self) -> tuple[tuple[str, bool], ...]:
+        """Title of every shown column, and whether any row has a text there."""
+        return tuple((self._title(shown), any(shown.texts)) for shown in self._shown)
+
     def column_width(self, position: int, measure: Callable[[str], int]) -> int:
         """A width in pixels that holds title and texts; ``measure`` gives the width of a text."""
         shown = self._shown[position]

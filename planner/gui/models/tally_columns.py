@@ -91,7 +91,7 @@ def tally_columns(
         margin = TallyColumn(margin.title, unknown, unknown, _("add costs"))
     return (
         margin,
-        _figure(_("Sales a week, without VAT"), tally.sales),
+        _figure(_("Sales a week ex VAT"), tally.sales),
         _figure(_("Units a week"), tally.units),
         TallyColumn(
             title=_("Items on the list"),

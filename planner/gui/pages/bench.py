@@ -8,7 +8,6 @@ import numpy as np
 from PySide6.QtCore import QByteArray, Qt, QTimer
 from PySide6.QtGui import QAction, QKeySequence, QShortcut
 from PySide6.QtWidgets import (
-    QCheckBox,
     QComboBox,
     QHBoxLayout,
     QLabel,
@@ -98,7 +97,9 @@ class BenchPage(Page):
         self._cluster.setAccessibleName(_("Cluster shown and changed"))
         self._cluster.currentIndexChanged.connect(lambda _i: self.look(self.watched))
         label.setBuddy(self._cluster)
-        self._only = QCheckBox(_("&Only changes"))
+        self._only = QToolButton()
+        self._only.setText(_("&Only changes"))
+        self._only.setCheckable(True)
         self._only.setAccessibleName(_("Show only items that differ from today"))
         self._only.toggled.connect(lambda _on: self._mask())
         row.addWidget(self._filter, 1)

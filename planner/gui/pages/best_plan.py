@@ -77,14 +77,14 @@ class BestPlanPage(Page):
         column = QVBoxLayout(right)
         column.setContentsMargins(6, 0, 0, 0)
         row = QHBoxLayout()
-        self._run = QPushButton(_("&Find the best plan"))
+        self._run = QPushButton(_("Find the &best plan"))
         self._run.setAccessibleName(_("Find the best plan"))
         self._run.clicked.connect(self.run)
         self._stop = QPushButton(_("St&op"))
         self._stop.setAccessibleName(_("Stop and keep the best plan so far"))
         self._stop.setToolTip(_("Stop and keep the best plan so far"))
         self._stop.clicked.connect(self.bridge.cancel)
-        self._take = QPushButton(_("Ta&ke into the plan"))
+        self._take = QPushButton(_("&Take into the plan"))
         self._take.setAccessibleName(_("Take the answer into the plan"))
         self._take.clicked.connect(self.bridge.take)
         row.addWidget(self._run)
@@ -94,7 +94,7 @@ class BestPlanPage(Page):
         column.addLayout(row)
         self._picture = GapPicture()
         column.addWidget(self._picture)
-        self._words = Words(_("The answer"))
+        self._words = Words(_("The answer"), spaced=False)
         column.addWidget(self._words)
         column.addWidget(self._tables(), 1)
         return right
@@ -117,8 +117,8 @@ class BestPlanPage(Page):
 
     def run(self) -> None:
         """Find the best plan in the child process."""
-        self._picture.clear()
         if self.bridge.recommend(self._form.seconds):
+            self._picture.begin()
             self._started = time.monotonic()
             figures = self.bridge.review.tally()
             goals = {"margin": figures.margin, "sales": figures.sales, "units": figures.units}
@@ -137,6 +137,8 @@ class BestPlanPage(Page):
 
     def _job_changed(self) -> None:
         running = self.bridge.running
+        if running is None:
+            self._picture.end()
         self._run.setEnabled(running is None)
         self._stop.setEnabled(running is not None and running.key == "recommend")
 
@@ -160,9 +162,7 @@ class BestPlanPage(Page):
         if plan is None:
             self._words.set_sentences(
                 (
-                    _(
-                        "Set goal and limits on the left, then find the best plan. Stop keeps the best so far."
-                    ),
+                    _("Set goal and limits on the left, then run. Stop keeps the best plan found so far."),
                     _("Below stand the limits and what the present plan uses of each."),
                 )
             )

@@ -57,7 +57,7 @@ class EvidencePage(Page):
         self._model.addItem(_("Nested: items of a segment are closer"), "nested")
         self._model.addItem(_("Plain: every item is alike"), "plain")
         label.setBuddy(self._model)
-        self._fit = QPushButton(_("&Fit the share model"))
+        self._fit = QPushButton(_("F&it the share model"))
         self._fit.setAccessibleName(_("Fit the share model"))
         self._fit.clicked.connect(self.fit)
         row.addWidget(label)

@@ -10,6 +10,7 @@ from PySide6.QtWidgets import (
     QDoubleSpinBox,
     QFormLayout,
     QHBoxLayout,
+    QLabel,
     QPushButton,
     QSpinBox,
     QVBoxLayout,
@@ -51,11 +52,11 @@ class LimitsForm(QWidget):
         )
         self._clusters.typed.connect(self._typed)
         clusters = TableView(self._clusters, _("Limits per cluster"))
-        clusters.setToolTip(
-            _("Double-click or F2 to type a limit; empty: none. The stores' own space always binds.")
-        )
         clusters.fit_rows(8)
         column.addWidget(clusters)
+        hint = QLabel(_("Double-click or F2 types a limit; empty: none. The stores' own space always binds."))
+        hint.setWordWrap(True)
+        column.addWidget(hint)
         column.addWidget(heading(_("Items kept, never listed or left as today"), 1.0))
         self._locks = TableModel(identity="key", shown=("rule", "item", "cluster", "reason", "until"))
         self._lock_view = TableView(self._locks, _("Locks"))
@@ -64,7 +65,7 @@ class LimitsForm(QWidget):
         add = QPushButton(_("&Add a lock…"))
         add.setAccessibleName(_("Add a lock"))
         add.clicked.connect(self.add_lock)
-        remove = QPushButton(_("Take the lock o&ff"))
+        remove = QPushButton(_("Take the loc&k off"))
         remove.setAccessibleName(_("Take the selected locks off"))
         remove.clicked.connect(self._remove_locks)
         row.addWidget(add)
@@ -108,7 +109,7 @@ class LimitsForm(QWidget):
         self._seconds.setSuffix(" " + _("s"))
         form = QFormLayout()
         form.addRow(_("&Goal"), self._goal)
-        form.addRow(_("Chan&ges at most"), self._changes)
+        form.addRow(_("Cha&nges at most"), self._changes)
         form.addRow(_("Cost of a li&sting"), self._listing)
         form.addRow(_("Cost of a &delisting"), self._delisting)
         form.addRow(_("T&ime allowed"), self._seconds)

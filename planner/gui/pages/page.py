@@ -64,7 +64,11 @@ class Page(QWidget):
         ready = self.ready()
         self._stack.setCurrentWidget(self.content if ready else self.empty)
         if ready:
-            self.look(kinds)
+            try:
+                self.look(kinds)
+            except Exception as error:
+                # Inside Qt's own call of showEvent an exception would end the program.
+                self.bridge.failed.emit(error)
 
     def showEvent(self, event: QShowEvent) -> None:
         super().showEvent(event)

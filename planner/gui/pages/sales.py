@@ -37,9 +37,9 @@ def file_rows() -> tuple[FileRow, ...]:
         FileRow("sales", _("&Sales"), _("needed: store, week or date, item, units, and revenue or price")),
         FileRow("items", _("&Items"), _("needed: item, segment; useful: brand, supplier, cost, space, VAT")),
         FileRow("stores", _("S&tores"), _("store, cluster, space for the category")),
-        FileRow("shoppers", _("S&hoppers"), _("store, week, shoppers who could have bought")),
+        FileRow("shoppers", _("Sho&ppers"), _("store, week, shoppers who could have bought")),
         FileRow("costs", _("&Costs"), _("item, unit cost, from week")),
-        FileRow("ranges", _("&Ranges"), _("store, item, first and last week")),
+        FileRow("ranges", _("Ran&ges"), _("store, item, first and last week")),
         FileRow("offers", _("&Offers"), _("new items with price and cost")),
         FileRow("successors", _("S&uccessors"), _("old item, new item")),
     )
@@ -63,15 +63,15 @@ class SalesPage(Page):
         column.addWidget(self._head)
         column.addWidget(self._summary)
         column.addWidget(self._tabs, 1)
-        self._tabs.addTab(self._files_tab(), _("&Files"))
+        self._tabs.addTab(self._files_tab(), _("Files"))
         self._models: dict[str, TableModel] = {}
         self._notes: dict[str, Words] = {}
         self._table_tabs: list[QWidget] = []
         for key, title, looks in (
-            ("reconciliation", _("Reco&nciliation"), {}),
-            ("checks", _("Chec&ks"), {"share": Look(bar=False)}),
-            ("matches", _("Column &matches"), {}),
-            ("events", _("&Listing events"), {"money": Look(bar=True)}),
+            ("reconciliation", _("Reconciliation"), {}),
+            ("checks", _("Checks"), {"share": Look(bar=False)}),
+            ("matches", _("Column matches"), {}),
+            ("events", _("Listing events"), {"money": Look(bar=True)}),
         ):
             self._table_tabs.append(self._table_tab(key, title, looks))
         self._coverage = HeatMap(_("Share of stores that list each item, week by week"))
@@ -81,7 +81,7 @@ class SalesPage(Page):
         scroll.setWidgetResizable(True)
         scroll.setWidget(self._coverage)
         self._table_tabs.append(scroll)
-        self._tabs.addTab(scroll, _("Co&verage"))
+        self._tabs.addTab(scroll, _("Coverage"))
         bridge.job_changed.connect(self._enable)
         bridge.files_dropped.connect(self.take_files)
         self._enable()
@@ -125,7 +125,7 @@ class SalesPage(Page):
         self._demo = QPushButton(_("Open the &demo"))
         self._demo.setAccessibleName(_("Open the demo"))
         self._demo.clicked.connect(lambda: self.bridge.load_folder(demo_folder(), _("Opening the demo")))
-        self._folder = QPushButton(_("Open a folder…"))
+        self._folder = QPushButton(_("Ope&n a folder…"))
         self._folder.setAccessibleName(_("Open a folder of tables"))
         self._folder.clicked.connect(self.bridge.folder_wanted)
         row.addWidget(self._folder)
@@ -148,9 +148,9 @@ class SalesPage(Page):
         grid.setColumnStretch(3, 1)
         for place, (text, name, widget) in enumerate(
             (
-                (_("Cate&gory"), _("Category"), self._category),
+                (_("Categor&y"), _("Category"), self._category),
                 (_("Segments &by"), _("Columns that form the segments"), self._segment_by),
-                (_("Toda&y is the last"), _("Weeks that today is measured on"), self._weeks),
+                (_("Today is the &last"), _("Weeks that today is measured on"), self._weeks),
             )
         ):
             widget.setAccessibleName(name)
@@ -167,7 +167,7 @@ class SalesPage(Page):
         model = TableModel(looks)
         plain = title.replace("&", "")
         column.addWidget(TableView(model, plain), 1)
-        note = Words(_("Notes on {table}").format(table=plain))
+        note = Words(_("Notes on {table}").format(table=plain), spaced=False)
         column.addWidget(note)
         self._models[key], self._notes[key] = model, note
         self._tabs.addTab(tab, title)

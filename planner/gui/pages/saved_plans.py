@@ -108,11 +108,11 @@ class SavedPlansPage(Page):
         self._keep.clicked.connect(self.keep_wanted)
         self._drop = button(_("&Drop"), _("Drop the chosen plan"))
         self._drop.clicked.connect(self._drop_chosen)
-        self._take = button(_("Ta&ke into the plan"), _("Take the chosen plan into the present plan"))
+        self._take = button(_("&Take into the plan"), _("Take the chosen plan into the present plan"))
         self._take.clicked.connect(self.bridge.take)
         self._workbook = button(_("Export the &workbook…"), _("Export the chosen plan as a workbook"))
         self._workbook.clicked.connect(lambda: self.export_wanted.emit("workbook"))
-        self._stores = button(_("S&tores list…"), _("Export the list for the stores"))
+        self._stores = button(_("&Stores list…"), _("Export the list for the stores"))
         self._stores.clicked.connect(lambda: self.export_wanted.emit("stores list"))
         return row
 
@@ -145,7 +145,7 @@ class SavedPlansPage(Page):
         column.addLayout(row)
         self._difference = TableModel()
         column.addWidget(TableView(self._difference, _("Where two plans differ")), 1)
-        tabs.addTab(difference, _("&Two plans item by item"))
+        tabs.addTab(difference, _("Two &plans item by item"))
         return tabs
 
     # -- which plan ------------------------------------------------------------------------
@@ -202,7 +202,7 @@ class SavedPlansPage(Page):
             self._tallies.clear()
         plans = self._all()
         table = plans_compared_table(review.loaded, plans, [self._tally(plan) for plan in plans])
-        self._plans.set_table(plans_in_words(table))
+        self._plans.set_table(plans_in_words(table, plans[0].name))
         self._note.set_sentences(table.notes)
         self._other.blockSignals(True)
         kept = self._other.currentText()

@@ -28,12 +28,12 @@ _LIGHT = {
 }
 
 _DARK = {
-    "Window": "#26282b",
+    "Window": "#303337",
     "WindowText": "#e9e9e6",
     "Base": "#1c1e20",
-    "AlternateBase": "#232528",
+    "AlternateBase": "#222427",
     "Text": "#e9e9e6",
-    "Button": "#34373b",
+    "Button": "#3f4348",
     "ButtonText": "#e9e9e6",
     "BrightText": "#ffffff",
     "ToolTipBase": "#3a3d41",
@@ -43,8 +43,8 @@ _DARK = {
     "Link": "#79bdec",
     "LinkVisited": "#c8a5dd",
     "PlaceholderText": "#9da0a3",
-    "Light": "#4a4e53",
-    "Midlight": "#3d4145",
+    "Light": "#565a60",
+    "Midlight": "#494d52",
     "Mid": "#17191b",
     "Dark": "#131416",
     "Shadow": "#0b0c0d",

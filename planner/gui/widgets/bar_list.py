@@ -45,6 +45,7 @@ class _BarRows(QAbstractListModel):
         super().__init__()
         self.rows: tuple[BarRow, ...] = ()
         self.scales: list[tuple[float, float]] = []
+        self.longest = ""
 
     def set_rows(self, rows: tuple[BarRow, ...]) -> None:
         same = len(rows) == len(self.rows)
@@ -52,6 +53,7 @@ class _BarRows(QAbstractListModel):
             self.beginResetModel()
         self.rows = rows
         self.scales = _scales(rows)
+        self.longest = max((row.text for row in rows), key=len, default="")
         if not same:
             self.endResetModel()
         elif rows:
@@ -82,7 +84,7 @@ def _scales(rows: tuple[BarRow, ...]) -> list[tuple[float, float]]:
     """(bottom, top) for every row: one scale from heading to heading, containing zero."""
     starts = [row for row, entry in enumerate(rows) if entry.kind == "heading" or row == 0]
     scales: list[tuple[float, float]] = []
-    for start, end in zip(starts, [*starts[1:], len(rows)], strict=True):
+    for start, end in zip(starts, [*starts, len(rows)][1:], strict=True):
         numbers = [n for row in rows[start:end] for n in (row.value, row.low, row.high) if math.isfinite(n)]
         bottom, top = min([*numbers, 0.0]), max([*numbers, 0.0])
         scales += [(bottom, top if top > bottom else bottom + 1.0)] * (end - start)
@@ -116,7 +118,7 @@ class _BarPainter(QStyledItemDelegate):
             painter.setFont(option.font)
             self._text(painter, inside, row.note, marks.faint, right=True)
         else:
-            self._row(painter, rect, row, model.scales[index.row()], marks, colour, selected)
+            self._row(painter, rect, index.row(), model, marks, colour, selected)
         if option.state & QStyle.StateFlag.State_HasFocus:
             painter.setPen(colour)
             painter.setBrush(Qt.BrushStyle.NoBrush)
@@ -134,20 +136,22 @@ class _BarPainter(QStyledItemDelegate):
         self,
         painter: QPainter,
         rect: QRect,
-        row: BarRow,
-        scale: tuple[float, float],
+        number_of_row: int,
+        model: _BarRows,
         marks: Marks,
         colour: QColor,
         selected: bool,
     ) -> None:
-        widest = painter.fontMetrics().horizontalAdvance("+0,000.0")
-        label = QRect(rect.left() + _PAD, rect.top(), int(rect.width() * 0.5) - _PAD, rect.height())
+        row, scale = model.rows[number_of_row], model.scales[number_of_row]
+        widest = painter.fontMetrics().horizontalAdvance(model.longest) + 8
         number = QRect(rect.right() - widest - _PAD, rect.top(), widest, rect.height())
+        label = QRect(rect.left() + _PAD, rect.top(), int((rect.width() - widest) * 0.56), rect.height())
         bars = QRect(label.right() + _PAD, rect.top() + 4, number.left() - label.right() - 2 * _PAD, 1)
         bars.setHeight(rect.height() - 8)
         self._text(painter, label, row.label, colour)
-        used = painter.fontMetrics().horizontalAdvance(row.label) + _PAD
-        if row.note and used < label.width() - 30:
+        metrics = painter.fontMetrics()
+        used = metrics.horizontalAdvance(row.label) + _PAD
+        if row.note and used + metrics.horizontalAdvance(row.note) <= label.width():
             self._text(painter, label.adjusted(used, 0, 0, 0), row.note, colour if selected else marks.faint)
         self._text(painter, number, row.text, colour, right=True)
         if not math.isfinite(row.value) or bars.width() < 20:

@@ -4,15 +4,19 @@ from __future__ import annotations
 
 from typing import Protocol, cast
 
-from PySide6.QtCore import QAbstractItemModel, QEvent, QModelIndex, QObject, QPersistentModelIndex, QRect, Qt
-from PySide6.QtGui import QColor, QFont, QFontMetrics, QKeyEvent, QMouseEvent, QPainter, QPalette, QPen
-from PySide6.QtWidgets import (
-    QApplication,
-    QStyle,
-    QStyledItemDelegate,
-    QStyleOptionButton,
-    QStyleOptionViewItem,
+from PySide6.QtCore import (
+    QAbstractItemModel,
+    QEvent,
+    QModelIndex,
+    QObject,
+    QPersistentModelIndex,
+    QPointF,
+    QRect,
+    QRectF,
+    Qt,
 )
+from PySide6.QtGui import QColor, QFont, QFontMetrics, QKeyEvent, QMouseEvent, QPainter, QPalette, QPen
+from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem
 
 from planner.gui.theme.cells import Cell
 from planner.gui.theme.colours import Marks, marks_of, mixed
@@ -80,7 +84,7 @@ class CellDelegate(QStyledItemDelegate):
     ) -> None:
         inside = option.rect.adjusted(_PAD, 0, -_PAD, 0)
         if cell.check is not None:
-            self._box(painter, option, cell.check)
+            self._box(painter, option.rect, cell.check, colour)
             inside.setLeft(inside.left() + _BOX + 6)
         metrics = painter.fontMetrics()
         align = Qt.AlignmentFlag.AlignVCenter | (
@@ -119,18 +123,28 @@ class CellDelegate(QStyledItemDelegate):
     def _box_rect(rect: QRect) -> QRect:
         return QRect(rect.left() + _PAD, rect.center().y() - _BOX // 2 + 1, _BOX, _BOX)
 
-    def _box(self, painter: QPainter, option: QStyleOptionViewItem, state: Qt.CheckState) -> None:
-        box = QStyleOptionButton()
-        box.rect = self._box_rect(option.rect)
-        box.palette = option.palette
-        flag = {
-            Qt.CheckState.Checked: QStyle.StateFlag.State_On,
-            Qt.CheckState.Unchecked: QStyle.StateFlag.State_Off,
-            Qt.CheckState.PartiallyChecked: QStyle.StateFlag.State_NoChange,
-        }[state]
-        box.state = QStyle.StateFlag.State_Enabled | flag
-        style = option.widget.style() if option.widget is not None else QApplication.style()
-        style.drawPrimitive(QStyle.PrimitiveElement.PE_IndicatorCheckBox, box, painter, option.widget)
+    def _box(self, painter: QPainter, rect: QRect, state: Qt.CheckState, line: QColor) -> None:
+        """A box whose outline is seen on every palette; a tick for in, a bar for in between."""
+        box = QRectF(self._box_rect(rect)).adjusted(1.5, 1.5, -1.5, -1.5)
+        painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+        painter.setPen(QPen(line, 1.2))
+        painter.setBrush(Qt.BrushStyle.NoBrush)
+        painter.drawRoundedRect(box, 2.0, 2.0)
+        painter.setPen(QPen(line, 2.2, c=Qt.PenCapStyle.RoundCap, j=Qt.PenJoinStyle.RoundJoin))
+        if state == Qt.CheckState.Checked:
+            left, middle, right = box.left() + 3.0, box.left() + 5.5, box.right() - 2.6
+            painter.drawPolyline(
+                [
+                    QPointF(left, box.center().y() + 0.5),
+                    QPointF(middle, box.bottom() - 3.2),
+                    QPointF(right, box.top() + 3.4),
+                ]
+            )
+        elif state == Qt.CheckState.PartiallyChecked:
+            painter.drawLine(
+                QPointF(box.left() + 3.2, box.center().y()), QPointF(box.right() - 3.2, box.center().y())
+            )
+        painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
 
     def editorEvent(
         self, event: QEvent, model: QAbstractItemModel, option: QStyleOptionViewItem, index: Index

@@ -24,16 +24,23 @@ class GapPicture(QWidget):
         self._values: list[float] = []
         self._bounds: list[float] = []
         self._today = math.nan
+        self._running = False
         self.setAccessibleName(_("Best value found and proven bound"))
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Preferred)
         self.setMinimumHeight(120)
 
     def sizeHint(self) -> QSize:
-        return QSize(420, 170)
+        return QSize(420, 150)
 
-    def clear(self) -> None:
-        """Forget the last run."""
+    def begin(self) -> None:
+        """A new run: forget the last one."""
         self._times, self._values, self._bounds, self._today = [], [], [], math.nan
+        self._running = True
+        self._tell()
+
+    def end(self) -> None:
+        """The run is over."""
+        self._running = False
         self._tell()
 
     def add(self, seconds: float, value: float, bound: float, today: float = math.nan) -> None:
@@ -57,7 +64,7 @@ class GapPicture(QWidget):
     def words(self) -> str:
         """The present state in words."""
         if not self._times:
-            return _("No run yet.")
+            return _("Running; no answer yet.") if self._running else _("No run yet.")
         value, bound = self._values[-1], self._bounds[-1]
         if not math.isfinite(value):
             return _("No assortment found yet.")
@@ -96,7 +103,7 @@ class GapPicture(QWidget):
         painter.setPen(QPen(marks.grid, 1.0))
         painter.drawRect(area)
         bottom, top = self._scale()
-        end = max(self._times[-1], 0.1)
+        end = 1.02 * max(self._times[-1], 0.1)
         low = self._steps(self._values, area, bottom, top, end)
         high = self._steps(self._bounds, area, bottom, top, end)
         painter.setClipRect(area.adjusted(-2, -2, 2, 2))
@@ -108,7 +115,8 @@ class GapPicture(QWidget):
         self._line(painter, high, QPen(marks.bound, 2.0, Qt.PenStyle.DashLine))
         self._today_line(painter, area, bottom, top, marks)
         painter.setClipping(False)
-        self._legend(painter, area, end, marks)
+        self._labels(painter, area, low, high, marks)
+        self._legend(painter, area, self._times[-1], marks)
 
     def _steps(self, values: list[float], area: QRectF, bottom: float, top: float, end: float) -> QPolygonF:
         """A staircase in pixels, without the points that are not known."""
@@ -130,6 +138,24 @@ class GapPicture(QWidget):
         painter.setPen(pen)
         painter.setBrush(Qt.BrushStyle.NoBrush)
         painter.drawPolyline(points)
+
+    def _labels(self, painter: QPainter, area: QRectF, low: QPolygonF, high: QPolygonF, marks: Marks) -> None:
+        """The last value and the last bound in figures, kept apart when they nearly meet."""
+        height = float(painter.fontMetrics().height())
+        painter.setPen(marks.text)
+        for points, values, above in ((high, self._bounds, True), (low, self._values, False)):
+            if not points.count():
+                continue
+            known = [n for n in values if math.isfinite(n)]
+            text = numbers.number(known[-1], numbers.sensible_decimals(known[-1]))
+            y = (
+                points.at(points.count() - 1).y() - height - 2.0
+                if above
+                else points.at(points.count() - 1).y() + 2.0
+            )
+            y = min(max(y, area.top()), area.bottom() - height)
+            box = QRectF(area.left(), y, area.width() - 6.0, height)
+            painter.drawText(box, Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter, text)
 
     def _today_line(self, painter: QPainter, area: QRectF, bottom: float, top: float, marks: Marks) -> None:
         if not math.isfinite(self._today):

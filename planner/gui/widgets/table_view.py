@@ -26,6 +26,8 @@ class HasRows(Protocol):
 
     def column_width(self, position: int, measure: Callable[[str], int]) -> int: ...
 
+    def titles_with_contents(self) -> tuple[tuple[str, bool], ...]: ...
+
 
 class TableView(QTableView):
     """``chosen(identity)`` is sent when the current row changes."""
@@ -37,7 +39,7 @@ class TableView(QTableView):
         self.setAccessibleName(name)
         self.setModel(model)
         self._kept = ""
-        self._widths_for: tuple[str, ...] = ()
+        self._widths_for: tuple[tuple[str, bool], ...] = ()
         self._spanned: list[int] = []
         self._most_rows = 0
         self._set_up()
@@ -51,6 +53,7 @@ class TableView(QTableView):
         model.modelAboutToBeReset.connect(self._remember)
         model.modelReset.connect(self._restore)
         model.layoutChanged.connect(self._span)
+        model.dataChanged.connect(lambda _first, _last: self._set_widths())
         self._restore()
 
     def _set_up(self) -> None:
@@ -115,17 +118,16 @@ class TableView(QTableView):
             self.setSpan(row, 0, 1, columns)
 
     def _set_widths(self) -> None:
-        """Widths from titles and texts, once per set of columns."""
+        """Widths from titles and texts, for columns that are new or have just got contents."""
         model = self.model()
-        titles = tuple(
-            str(model.headerData(c, Qt.Orientation.Horizontal)) for c in range(model.columnCount())
-        )
-        if titles == self._widths_for or not model.rowCount():
-            return
-        self._widths_for = titles
         measure = self.fontMetrics().horizontalAdvance
-        for column in range(len(titles)):
-            self.setColumnWidth(column, self._rows().column_width(column, measure))
+        titles = self._rows().titles_with_contents()
+        if not model.rowCount():
+            return
+        for column, title in enumerate(titles):
+            if title not in self._widths_for:
+                self.setColumnWidth(column, self._rows().column_width(column, measure))
+        self._widths_for = titles
 
     def fit_rows(self, most: int) -> None:
         """Be no higher than the rows, and no higher than ``most`` of them."""
