@@ -7,6 +7,7 @@ import pytest
 
 import planner.optimise.cluster_search as cluster_search
 import planner.optimise.relaxation as relaxation
+import planner.optimise.solve as solve
 from planner.optimise.problem import AssortmentProblem, AssortmentResult, SolverSettings, Status
 from planner.optimise.solve import best_assortment
 from tests.optimise.cases import enumerate_case, random_case
@@ -45,10 +46,18 @@ def test_small_cases_equal_enumeration(first):
             assert found.gap <= 1e-7
 
 
+def bare(monkeypatch) -> None:
+    """No listing of whole plans and no local search: cuts and branching alone must find the best."""
+    monkeypatch.setattr(cluster_search, "_FEW_PLANS", 2)
+    for module in (cluster_search, solve):
+        monkeypatch.setattr(
+            module, "improve", lambda model, states, changes: (float(model.objective(states)), states)
+        )
+
+
 @pytest.mark.parametrize("first", range(100, 200, 20))
 def test_small_cases_through_the_relaxation_equal_enumeration(first, monkeypatch):
-    """The same with the listing of whole plans switched off, so that bounds come from cuts and branching."""
-    monkeypatch.setattr(cluster_search, "_FEW_PLANS", 2)
+    bare(monkeypatch)
     for seed in range(first, first + 20):
         problem = random_case(seed)
         assert complaints(problem, best_assortment(problem, SETTINGS)) == [], seed
@@ -56,7 +65,7 @@ def test_small_cases_through_the_relaxation_equal_enumeration(first, monkeypatch
 
 def _planted(monkeypatch) -> int:
     """How many of 30 cases enumeration objects to."""
-    monkeypatch.setattr(cluster_search, "_FEW_PLANS", 2)
+    bare(monkeypatch)
     count = 0
     for seed in range(30):
         problem = random_case(seed)
