@@ -58,12 +58,21 @@ WORDS: dict[str, tuple[str, str]] = {
     "cost_above_price": (_("Item whose cost is above its price before VAT"), _("kept; check the cost")),
     "gtin_check_digit": (_("GTIN with a wrong check digit"), _("kept; check the code")),
     "duplicate_item": (_("Item listed twice in the items table"), _("the first row counts")),
+    "blank_item": (_("Row of the items table without a code"), _("not used")),
     "duplicate_store": (_("Store listed twice in the stores table"), _("the first row counts")),
-    "item_without_segment": (_("Item without a segment"), _("left out of the review")),
+    "item_without_segment": (
+        _("Item without a segment"),
+        _("put into a segment of its own; an offer is left out"),
+    ),
     "never_sold": (_("Item in the items table that was never sold"), _("left out, or an offer when it has "
                      "price and cost")),
     "segment_with_one_item": (_("Segment with one item"), _("kept; its transfers inside are unknown")),
     "offer_already_sold": (_("Offer for an item that is already sold"), _("the offer is left out")),
+    "unknown_code": (
+        _("Row of another table for an item or store that no table knows"),
+        _("not used"),
+    ),
+    "backward_range": (_("Range that ends before it starts"), _("not used")),
     "unreadable_cell": (_("Unreadable cell in another table"), _("taken as blank")),
 }  # fmt: skip
 
@@ -102,16 +111,23 @@ class Ledger:
                 code, title, int(rows.size), self.money.total(rows), False, treatment, examples
             )
 
-    def note_other(
-        self, code: str, examples: list[tuple[str, int, str]], money: Decimal = Decimal(0)
-    ) -> None:
+    def note_other(self, code: str, examples: list[tuple[str, int, str]]) -> None:
         """Report something outside the sales rows; every example is one finding."""
-        if examples:
-            title, treatment = WORDS[code]
-            before = self.noted.get(code)
-            rows = len(examples) + (before.rows if before else 0)
-            shown = ((before.examples if before else ()) + tuple(examples))[:EXAMPLES]
-            self.noted[code] = Check(code, title, rows, Decimal(0), False, treatment, shown)
+        self._add(code, examples, len(examples))
+
+    def note_rows(self, code: str, raw: RawTable, rows: Ints) -> None:
+        """Report rows of another table."""
+        examples = [(raw.file, int(raw.rows[row]), raw.line(int(row))) for row in rows[:EXAMPLES]]
+        self._add(code, examples, int(rows.size))
+
+    def _add(self, code: str, examples: list[tuple[str, int, str]], count: int) -> None:
+        if not count:
+            return
+        title, treatment = WORDS[code]
+        before = self.noted.get(code)
+        rows = count + (before.rows if before else 0)
+        shown = ((before.examples if before else ()) + tuple(examples))[:EXAMPLES]
+        self.noted[code] = Check(code, title, rows, Decimal(0), False, treatment, shown)
 
     @property
     def used(self) -> Bools:

@@ -9,7 +9,7 @@ from planner.base.text import _
 from planner.sales.checks import Ledger
 from planner.sales.matching import Matched
 from planner.sales.money import decimal_marks, read_numbers
-from planner.sales.side_tables import Axes, note_unreadable
+from planner.sales.side_tables import Axes, note_unreadable, positions
 from planner.sales.weeks import Calendar, monday_of, read_days
 
 Floats = NDArray[np.float64]
@@ -22,7 +22,7 @@ def read_costs(table: Matched, axes: Axes, calendar: Calendar, ledger: Ledger) -
     A cost is valid from its week until the next row of the item; a blank week means from the start.
     Costs of a code that was replaced are not those of its successor.
     """
-    known = axes.items.find_all(table.column("item"))[0]
+    known = positions(axes.items, np.arange(axes.item.size), table, "item", ledger)
     item = np.where(known >= 0, np.append(axes.item, -1)[known], -1)
     mark = decimal_marks(table, ("cost",))["cost"]
     numbers = read_numbers(table.column("cost"), mark)

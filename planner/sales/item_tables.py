@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -20,9 +20,8 @@ from planner.sales.synonyms import CENTIMETRES
 
 Floats = NDArray[np.float64]
 
-_NUMBERS = (
-    "cost", "price", "space_cm", "width_cm", "facings", "min_facings",
-)  # fmt: skip
+_NUMBERS = ("cost", "price", "space_cm", "width_cm", "facings", "min_facings")
+_SHARES = ("vat_rate", "margin_rate")
 _CONTENT = re.compile(r"^(?:(\d+)\s*[xX*]\s*)?(\d+(?:[.,]\d+)?)\s*([A-Za-z]*)\.?$")
 _UNITS = {"ml": ("l", 0.001), "cl": ("l", 0.01), "dl": ("l", 0.1), "l": ("l", 1.0), "lt": ("l", 1.0),
           "ltr": ("l", 1.0), "g": ("kg", 0.001), "gr": ("kg", 0.001), "kg": ("kg", 1.0)}  # fmt: skip
@@ -107,71 +106,98 @@ def _chosen(table: Matched, name: str) -> str:
     )
 
 
-def read_items(table: Matched, ledger: Ledger, segment_by: tuple[str, ...], offers: bool) -> list[ItemRow]:
-    """One record per code, the first row of a code counting; defects noted in the ledger."""
-    rows = np.arange(len(table.raw))
-    marks = decimal_marks(table, (*_NUMBERS, "vat_rate", "margin_rate"))
-    _report_unreadable(table, _NUMBERS, marks, ledger)
-    numbers = {
-        name: read_numbers(table.column(name), marks[name]).values
-        if table.has(name)
-        else np.full(rows.size, np.nan)
-        for name in _NUMBERS
-    }
-    texts = {
-        name: table.column(name).cells(rows) if table.has(name) else [""] * rows.size
-        for name in ("item", "description", "brand", "supplier", "category", "clusters")
-    }
-    shares = {
-        name: rates(table.column(name), marks[name]) if table.has(name) else np.full(rows.size, np.nan)
-        for name in ("vat_rate", "margin_rate")
-    }
-    own = read_flags(table.column("own_label"))[0] if table.has("own_label") else np.zeros(rows.size)
-    keep = read_flags(table.column("keep"))[0] if table.has("keep") else np.zeros(rows.size)
-    facings = np.fmax(np.fmax(np.nan_to_num(numbers["facings"]), np.nan_to_num(numbers["min_facings"])), 1.0)
-    space = _lengths(table, "space_cm", marks)
-    space = np.where(space > 0.0, space, _lengths(table, "width_cm", marks) * facings)
-    contents = _contents(table)
-    extra = _attributes(table, segment_by)
-    segments = segment_texts(table, segment_by)
-    found: list[ItemRow] = []
-    seen: set[str] = set()
-    twice: list[tuple[str, int, str]] = []
-    for k in range(rows.size):
-        code = texts["item"][k]
-        if not code or code in seen:
-            if code:
-                twice.append((table.raw.file, int(table.raw.rows[k]), table.raw.line(k)))
-            continue
-        seen.add(code)
-        item = Item(
-            code=code,
-            description=texts["description"][k],
-            segment=segments[k],
-            brand=texts["brand"][k],
-            supplier=texts["supplier"][k],
-            own_label=bool(own[k]),
-            content=contents[k][0],
-            content_unit=contents[k][1],
-            space_cm=float(space[k]),
-            vat_rate=float(np.nan_to_num(shares["vat_rate"][k])),
-            cost=_positive(numbers["cost"][k]),
-            price=_positive(numbers["price"][k]),
-            keep=bool(keep[k]),
-            is_offer=offers,
-            offered_to=_clusters(texts["clusters"][k]),
+@dataclass(frozen=True)
+class _Columns:
+    """The cells of an items table, column by column."""
+
+    texts: dict[str, list[str]]
+    numbers: dict[str, Floats]
+    shares: dict[str, Floats]
+    flags: dict[str, Floats]
+    space: Floats
+    contents: list[tuple[float, str]]
+    segments: list[str]
+    extra: dict[str, list[str | float | None]]
+
+    def item(self, k: int, is_offer: bool) -> Item:
+        """The record of row k."""
+        return Item(
+            code=self.texts["item"][k],
+            description=self.texts["description"][k],
+            segment=self.segments[k],
+            brand=self.texts["brand"][k],
+            supplier=self.texts["supplier"][k],
+            own_label=bool(self.flags["own_label"][k]),
+            content=self.contents[k][0],
+            content_unit=self.contents[k][1],
+            space_cm=float(self.space[k]),
+            vat_rate=float(np.nan_to_num(self.shares["vat_rate"][k])),
+            cost=_positive(self.numbers["cost"][k]),
+            price=_positive(self.numbers["price"][k]),
+            keep=bool(self.flags["keep"][k]),
+            is_offer=is_offer,
+            offered_to=_clusters(self.texts["clusters"][k]),
             attributes=tuple(
-                (name, value) for name, cells in extra.items() if (value := cells[k]) is not None
+                (name, value) for name, cells in self.extra.items() if (value := cells[k]) is not None
             ),
         )
-        rate = shares["margin_rate"][k]
+
+
+def _item_columns(table: Matched, ledger: Ledger, segment_by: tuple[str, ...]) -> _Columns:
+    rows = np.arange(len(table.raw))
+    marks = decimal_marks(table, (*_NUMBERS, *_SHARES))
+    _report_unreadable(table, _NUMBERS, marks, ledger)
+    unknown = np.full(rows.size, np.nan)
+    numbers = {
+        name: read_numbers(table.column(name), marks[name]).values if table.has(name) else unknown
+        for name in _NUMBERS
+    }
+    facings = np.fmax(np.nan_to_num(numbers["facings"]), np.nan_to_num(numbers["min_facings"]))
+    space = _lengths(table, "space_cm", marks)
+    width = _lengths(table, "width_cm", marks)
+    return _Columns(
+        texts={
+            name: table.column(name).cells(rows) if table.has(name) else [""] * rows.size
+            for name in ("item", "description", "brand", "supplier", "category", "clusters")
+        },
+        numbers=numbers,
+        shares={
+            name: rates(table.column(name), marks[name]) if table.has(name) else unknown for name in _SHARES
+        },
+        flags={
+            name: read_flags(table.column(name))[0] if table.has(name) else np.zeros(rows.size)
+            for name in ("own_label", "keep")
+        },
+        space=np.where(space > 0.0, space, width * np.maximum(facings, 1.0)),
+        contents=_contents(table),
+        segments=segment_texts(table, segment_by),
+        extra=_attributes(table, segment_by),
+    )
+
+
+def read_items(table: Matched, ledger: Ledger, segment_by: tuple[str, ...], offers: bool) -> list[ItemRow]:
+    """One record per code, the first row of a code counting; defects noted in the ledger."""
+    columns = _item_columns(table, ledger, segment_by)
+    found: list[ItemRow] = []
+    seen: set[str] = set()
+    left: dict[str, list[int]] = {"duplicate_item": [], "blank_item": []}
+    for k, code in enumerate(columns.texts["item"]):
+        if not code or code in seen:
+            left["duplicate_item" if code else "blank_item"].append(k)
+            continue
+        seen.add(code)
+        rate = float(columns.shares["margin_rate"][k])
         found.append(
             ItemRow(
-                item, texts["category"][k], float(rate) if np.isfinite(rate) else None, table.raw.file,
+                columns.item(k, offers),
+                columns.texts["category"][k],
+                rate if np.isfinite(rate) else None,
+                table.raw.file,
                 int(table.raw.rows[k]),
             )
-        )  # fmt: skip
-    ledger.note_other("duplicate_item", twice)
+        )
+    for code, rows in left.items():
+        ledger.note_rows(code, table.raw, np.array(rows, dtype=np.int64))
     _check_digits(table, ledger)
     return found
 
@@ -257,17 +283,12 @@ def read_stores(table: Matched | None, sold_in: list[str], ledger: Ledger) -> li
 
     clusters, regions, sizes = texts("cluster", "all"), texts("region", ""), texts("size", "")
     found: dict[str, Store] = {}
-    twice: list[tuple[str, int, str]] = []
+    twice: list[int] = []
     for k, code in enumerate(texts("store", "")):
         if code in found:
-            twice.append((table.raw.file, int(table.raw.rows[k]), table.raw.line(k)))
+            twice.append(k)
         elif code:
             room = float(space[k]) if space[k] > 0.0 else None
             found[code] = Store(code, clusters[k] or _("without cluster"), room, regions[k], sizes[k])
-    ledger.note_other("duplicate_store", twice)
+    ledger.note_rows("duplicate_store", table.raw, np.array(twice, dtype=np.int64))
     return list(found.values())
-
-
-def with_cost(item: Item, cost: float | None) -> Item:
-    """The item at another cost."""
-    return replace(item, cost=cost)

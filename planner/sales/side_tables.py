@@ -5,7 +5,6 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-import pandas as pd
 from numpy.typing import NDArray
 
 from planner.base.text import _
@@ -49,8 +48,10 @@ class Axes:
     n_stores: int
 
 
-def _positions(index: CodeIndex, axis: Ints, table: Matched, ours: str) -> Ints:
+def positions(index: CodeIndex, axis: Ints, table: Matched, ours: str, ledger: Ledger) -> Ints:
+    """Axis position (n,) of every row's code, -1 when left out; codes that nobody knows are reported."""
     known = index.find_all(table.column(ours))[0]
+    ledger.note_rows("unknown_code", table.raw, np.flatnonzero(known < 0))
     return np.where(known >= 0, np.append(axis, -1)[known], -1)
 
 
@@ -73,8 +74,8 @@ class RangeRows:
 
 def read_range_rows(table: Matched, axes: Axes, calendar: Calendar, ledger: Ledger) -> RangeRows:
     """Ranges rows: inclusive; a blank first week means from the start, a blank last week still listed."""
-    item = axes.items.find_all(table.column("item"))[0]
-    store = _positions(axes.stores, axes.store, table, "store")
+    item = positions(axes.items, np.arange(axes.n_items), table, "item", ledger)
+    store = positions(axes.stores, axes.store, table, "store", ledger)
     n = len(table.raw)
     first, last = np.zeros(n, dtype=np.int64), np.full(n, axes.n_weeks - 1, dtype=np.int64)
     usable = (item >= 0) & (store >= 0)
@@ -84,6 +85,7 @@ def read_range_rows(table: Matched, axes: Axes, calendar: Calendar, ledger: Ledg
             target[:] = np.where(days.blank, target, days.week - axes.start)
             note_unreadable(table, ours, days.bad, ledger)
             usable &= ~days.bad
+    ledger.note_rows("backward_range", table.raw, np.flatnonzero(usable & (first > last)))
     usable &= first <= last
     return RangeRows(store[usable], axes.item[item[usable]], first[usable], last[usable])
 
@@ -131,16 +133,12 @@ def read_shoppers(
     mark = decimal_marks(table, ("shoppers",))["shoppers"]
     numbers = read_numbers(table.column("shoppers"), mark)
     note_unreadable(table, "shoppers", numbers.bad, ledger)
-    store = _positions(axes.stores, axes.store, table, "store")
-    week = days.week - axes.start
+    store = positions(axes.stores, axes.store, table, "store", ledger)
+    week = days.week.astype(np.int64) - axes.start
     use = (store >= 0) & (week >= 0) & (week < axes.n_weeks) & ~days.bad & ~days.blank
     repeated = table.raw.repeats()
     use &= (np.nan_to_num(numbers.values) > 0.0) & ~repeated
-    found = np.full((axes.n_stores, axes.n_weeks), np.nan)
-    if use.any():
-        sums = pd.Series(numbers.values[use]).groupby([store[use], week[use]]).sum()
-        at = np.array(sums.index.tolist(), dtype=np.int64)
-        found[at[:, 0], at[:, 1]] = sums.to_numpy()
+    found = _sums(numbers.values[use], store[use], week[use], (axes.n_stores, axes.n_weeks))
     notes: list[str] = []
     if repeated.any():
         notes.append(
@@ -149,7 +147,7 @@ def read_shoppers(
             )
         )
     wanted = opened & np.isnan(found)
-    counted = ~np.isnan(found).all(axis=1)
+    counted: Bools = np.any(~np.isnan(found), axis=1)
     both = counted[:, None] & opened & (units > 0.0)
     if not both.any():
         return None, [_("No shopper count belongs to a store and week with sales; none is used.")]
@@ -170,3 +168,10 @@ def read_shoppers(
             )
         )
     return found, notes
+
+
+def _sums(values: Floats, store: Ints, week: Ints, shape: tuple[int, int]) -> Floats:
+    """Sums (S, W) of the values, NaN where there is none."""
+    cell, size = store * shape[1] + week, shape[0] * shape[1]
+    total, count = np.bincount(cell, values, size), np.bincount(cell, minlength=size)
+    return np.where(count > 0, total, np.nan).reshape(shape)

@@ -288,6 +288,32 @@ def test_unreadable_side_cells_are_reported(tmp_path: Path) -> None:
     assert ("ranges.csv", 2, "first_week=early") in found.examples
 
 
+def test_rows_for_unknown_codes_are_reported(tmp_path: Path) -> None:
+    items = [*item_rows(), {"sku": "", "description": "no code", "segment": "mint"}]
+    costs = [{"sku": "0010", "cost": 1, "from": ""}, {"sku": "4711", "cost": 1, "from": ""}]
+    ranges = [
+        {
+            "store": "S01",
+            "sku": "0010",
+            "first_week": monday(8).isoformat(),
+            "last_week": monday(3).isoformat(),
+        },
+        {"store": "S09", "sku": "0010", "first_week": "", "last_week": ""},
+    ]
+    loaded = load_rows(tmp_path, items=items, costs=costs, ranges=ranges)
+    found = {c.code: c for c in loaded.report.checks}
+    assert (found["unknown_code"].rows, found["unknown_code"].examples) == (
+        2,
+        (
+            ("ranges.csv", 3, "store=S09, sku=0010, first_week=, last_week="),
+            ("costs.csv", 3, "sku=4711, cost=1, from="),
+        ),
+    )
+    assert found["blank_item"].examples[0][:2] == ("items.csv", 6)
+    assert found["backward_range"].examples[0][:2] == ("ranges.csv", 2)
+    assert loaded.panel.listed.all()
+
+
 def test_store_weeks_without_sales_are_no_markets(tmp_path: Path) -> None:
     gone = monday(7).isoformat()
     rows = [r for r in sales_rows(20) if not (r["store_no"] == "S02" and r["week_commencing"] == gone)]
