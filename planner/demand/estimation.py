@@ -28,7 +28,7 @@ FREE_LEVEL = 100.0
 
 @dataclass(frozen=True)
 class Estimation:
-    """A finished maximisation with what is needed to use it."""
+    """A finished maximisation with what is needed to use it; iterations and evaluations of all passes."""
 
     design: Design
     likelihood: NestedLikelihood
@@ -36,6 +36,8 @@ class Estimation:
     prior: Prior
     free: Bools
     dispersion: float
+    iterations: int
+    evaluations: int
 
 
 def _start(design: Design, plain: bool, shoppers: bool) -> Floats:
@@ -143,10 +145,12 @@ def estimate(
     distribution = base.today.mean(axis=0)
     columns, n_segments = features(catalogue, base, distribution)
     start = theta.copy()
+    iterations = evaluations = 0
     for number in range(settings.passes):
         prior = _prior(design, settings, start, centre, spread, dispersion)
         maximum = maximise(likelihood, theta, prior, free, settings.stop, progress)
         theta = maximum.theta
+        iterations, evaluations = iterations + maximum.iterations, evaluations + maximum.evaluations
         dispersion = _dispersion(likelihood, theta, free)
         if number < settings.passes - 1:
             effects = theta[lay.items].reshape(lay.n_clusters, lay.n_items)
@@ -154,4 +158,4 @@ def estimate(
             precision = np.asarray(sold, dtype=np.float64) / dispersion
             prediction = predict(effects.mean(axis=0), precision, columns, n_segments)
             centre, spread = prediction.centre, prediction.spread
-    return Estimation(design, likelihood, maximum, prior, free, dispersion)
+    return Estimation(design, likelihood, maximum, prior, free, dispersion, iterations, evaluations)

@@ -32,7 +32,8 @@ def random_problem(category: str, unscaled: bool, seed: int = 3):
                 rng.integers(150, 200, 12).astype(float),
             )
         )
-    layout = Layout(2, 6, 3, 3, 0 if unscaled else 2, 6, 4, category, *((0, 0) if unscaled else (2, 2)), unscaled)
+    extra = 0 if unscaled else 2
+    layout = Layout(2, 6, 3, 3, extra, 6, 4, category, extra, extra, unscaled)
     theta = rng.normal(0.0, 0.4, layout.size)
     if category == "none":
         theta[layout.category_ratio] = 40.0
