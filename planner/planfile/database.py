@@ -29,6 +29,11 @@ _HEADER = 100
 _WAIT_SECONDS = 5.0
 
 
+def text_checksum(name: str, text: str) -> str:
+    """Digest of a text and of the name it stands under."""
+    return checksum(f"{name}\0{text}".encode("utf-8", "surrogatepass"))
+
+
 def check_identity(path: Path) -> None:
     """Raise PlanFileError unless the header is that of a plan file this version can read."""
     try:
@@ -125,7 +130,7 @@ def _plan_of_saving(connection: sqlite3.Connection, texts: dict[str, str], blobs
         connection.execute("DELETE FROM texts WHERE name = ?", (name,))
     for name, text in texts.items():
         if before.get(name) != text:
-            row = (name, text, checksum(text.encode("ascii")))
+            row = (name, text, text_checksum(name, text))
             connection.execute("INSERT OR REPLACE INTO texts VALUES (?, ?, ?)", row)
 
 
@@ -169,11 +174,13 @@ class Fetched:
         sizes = self._connection.execute(
             "SELECT name, length(CAST(json AS BLOB)) FROM texts LIMIT ?", (self._limits.rows + 1,)
         ).fetchall()
+        if any(not isinstance(name, str) or not isinstance(size, int) for name, size in sizes):
+            raise Damage("a text without a name or content")
         if len(sizes) > self._limits.rows or any(size > self._limits.json_bytes for _name, size in sizes):
             raise Damage(f"more than {self._limits.rows} texts or {self._limits.json_bytes} bytes in one")
         found = {}
         for name, text, digest in self._connection.execute("SELECT name, json, checksum FROM texts"):
-            if not isinstance(text, str) or checksum(text.encode("utf-8", "surrogatepass")) != digest:
+            if not isinstance(text, str) or text_checksum(name, text) != digest:
                 raise Damage(f"text {name!r} is damaged")
             try:
                 found[name] = json.loads(text)

@@ -40,7 +40,8 @@ def save(path: Path, contents: PlanContents) -> None:
     """
     refuse_unfit(contents)
     writer = Writer()
-    texts = {"program": json.dumps({"version": __version__})}
+    parts = [part.name for part in fields(contents)]
+    texts = {"program": json.dumps({"version": __version__, "parts": parts})}
     for part in fields(contents):
         texts[part.name] = json.dumps(writer.write(getattr(contents, part.name)), separators=(",", ":"))
     limits = FileLimits()
@@ -62,12 +63,19 @@ def load(path: Path, limits: FileLimits | None = None) -> PlanContents:
     with read_database(path, allowed) as file:
         texts = file.texts()
         reader = Reader(file.blob, allowed)
-        values = {
-            part.name: reader.read(texts[part.name]) for part in fields(PlanContents) if part.name in texts
-        }
-        contents = _contents(values)
+        known = {part.name for part in fields(PlanContents)}
+        contents = _contents({name: reader.read(texts[name]) for name in _parts(texts) if name in known})
         check_shapes(contents)
     return contents
+
+
+def _parts(texts: dict[str, object]) -> list[str]:
+    """Names of the parts that were saved; one of them missing is damage, not an old file."""
+    program = texts.get("program")
+    parts = program.get("parts") if isinstance(program, dict) else None
+    if not isinstance(parts, list) or not all(isinstance(name, str) and name in texts for name in parts):
+        raise Damage("a part is missing")
+    return parts
 
 
 def _contents(values: dict[str, object]) -> PlanContents:

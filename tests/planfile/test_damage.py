@@ -19,6 +19,7 @@ import pytest
 from planner.base.errors import CallError, PlanFileError
 from planner.planfile.blobs import checksum
 from planner.planfile.damage import FileLimits
+from planner.planfile.database import text_checksum
 from planner.planfile.store import PlanContents, load, save
 from tests.planfile.same import same
 from tests.tables import records
@@ -57,9 +58,8 @@ def rewrite(path: Path, name: str, change: Callable[[str], object]) -> None:
         found = connection.execute("SELECT json FROM texts WHERE name = ?", (name,)).fetchone()
         new = change(found[0])
         text = new if isinstance(new, str) else json.dumps(new)
-        connection.execute(
-            "UPDATE texts SET json = ?, checksum = ? WHERE name = ?", (text, checksum(text.encode()), name)
-        )
+        row = (text, text_checksum(name, text), name)
+        connection.execute("UPDATE texts SET json = ?, checksum = ? WHERE name = ?", row)
 
 
 def test_files_that_are_something_else(tmp_path: Path) -> None:
@@ -111,42 +111,36 @@ def test_every_truncation_is_noticed(plan_file: Path) -> None:
         refused(plan_file)
 
 
-def test_garbage_inside_gives_an_error_or_the_whole_review(plan_file: Path) -> None:
-    data = plan_file.read_bytes()
-    rng = random.Random(11)
+def damage_and_load(path: Path, rounds: int, seed: int) -> int:
+    """Spoil the file in random ways; every loading gives an error or the whole review.  Refusals."""
+    data = path.read_bytes()
+    rng = random.Random(seed)
     refusals = 0
-    for _round in range(150):
+    for _round in range(rounds):
         damaged = bytearray(data)
-        for _hit in range(rng.choice((1, 3, 200))):
-            damaged[rng.randrange(len(damaged))] = rng.randrange(256)
-        plan_file.write_bytes(bytes(damaged))
+        for _hit in range(rng.choice((1, 1, 1, 20))):
+            start = rng.randrange(len(damaged))
+            part = damaged[start : start + rng.choice((1, 2, 8, 64, 1024))]
+            damaged[start : start + len(part)] = rng.randbytes(len(part))
+        cut = rng.randrange(len(damaged)) if rng.random() < 0.2 else len(damaged)
+        path.write_bytes(bytes(damaged[:cut]))
         try:
-            back = load(plan_file)
+            back = load(path)
         except PlanFileError:
             refusals += 1
         else:
             # Unused bytes may change; what is read may not.
             assert same(back, contents())
-    assert refusals > 50
+    return refusals
+
+
+def test_damage_gives_an_error_or_the_whole_review(plan_file: Path) -> None:
+    assert damage_and_load(plan_file, 250, seed=11) > 100
 
 
 @pytest.mark.slow
 def test_twenty_thousand_damaged_files(plan_file: Path) -> None:
-    data = plan_file.read_bytes()
-    rng = random.Random(12)
-    refusals = 0
-    for _round in range(20_000):
-        damaged = bytearray(data)
-        start = rng.randrange(len(damaged))
-        length = rng.choice((1, 2, 8, 64, 1024))
-        damaged[start : start + length] = rng.randbytes(len(damaged[start : start + length]))
-        plan_file.write_bytes(bytes(damaged[: rng.choice((len(damaged), rng.randrange(len(damaged))))]))
-        try:
-            back = load(plan_file)
-        except PlanFileError:
-            refusals += 1
-        else:
-            assert same(back, contents())
+    refusals = damage_and_load(plan_file, 20_000, seed=12)
     print(f"\n20,000 damaged files: {refusals} refused, the others read as saved")
     assert refusals > 10_000
 
@@ -184,6 +178,19 @@ def test_checksums_guard_texts_and_blobs(plan_file: Path) -> None:
     assert "damaged" in refused(plan_file).problem
     run(plan_file, "DELETE FROM blobs WHERE rowid = 1")
     assert "missing" in refused(plan_file).problem
+
+
+def test_no_part_goes_missing_or_changes_its_name(plan_file: Path) -> None:
+    run(plan_file, "UPDATE texts SET name = 'plAns' WHERE name = 'plans'")
+    assert "text 'plAns' is damaged" in refused(plan_file).problem
+    run(plan_file, "DELETE FROM texts WHERE name = 'plAns'")
+    assert "a part is missing" in refused(plan_file).problem
+    save(plan_file, contents())
+    rewrite(plan_file, "program", lambda _old: {"version": "0"})
+    assert "a part is missing" in refused(plan_file).problem
+    # A part that an older program did not have takes its default, one of a newer is passed over.
+    rewrite(plan_file, "program", lambda _old: {"parts": ["loaded", "fitted", "program"]})
+    assert load(plan_file).plans == ()
 
 
 HOSTILE: list[tuple[str, object, str]] = [
@@ -225,7 +232,6 @@ def test_hostile_texts_build_nothing(plan_file: Path, name: str, node: object, p
 def test_depth_and_size_are_limited(plan_file: Path) -> None:
     rewrite(plan_file, "settings", lambda _old: "[" * 100_000 + "]" * 100_000)
     assert "sensible depth" in refused(plan_file).problem
-    rewrite(plan_file, "program", lambda _old: "1")
     rewrite(plan_file, "settings", lambda _old: {"$d": [["a", _nest(60)]]})
     assert "nested deeper" in refused(plan_file).problem
     rewrite(plan_file, "settings", lambda _old: "1" * 5000)
