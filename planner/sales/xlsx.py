@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import warnings
 import zipfile
+import zlib
 from datetime import date, datetime, time
 from pathlib import Path
 from typing import Any
@@ -14,6 +15,12 @@ from openpyxl.utils.exceptions import InvalidFileException
 from planner.base.errors import DataError
 from planner.base.text import _
 
+# What a damaged workbook makes its parts raise: archive, XML and cell values.
+_DAMAGE = (
+    InvalidFileException, zipfile.BadZipFile, zlib.error, SyntaxError, OSError, EOFError, KeyError,
+    ValueError, TypeError, IndexError, AttributeError, NotImplementedError, RuntimeError, OverflowError,
+)  # fmt: skip
+
 
 def read_sheet(path: Path, name: str) -> tuple[list[str], list[list[str]], list[int]]:
     """Headers, rows of text cells and their row numbers of one sheet.
@@ -21,29 +28,35 @@ def read_sheet(path: Path, name: str) -> tuple[list[str], list[list[str]], list[
     The sheet called like the table ("sales"), else the first one that holds something.
     """
     try:
-        with warnings.catch_warnings():
-            # Styles and validations that cannot be kept do not matter to a reader.
-            warnings.simplefilter("ignore", UserWarning)
-            book = openpyxl.load_workbook(path, read_only=True, data_only=True)
-    except (InvalidFileException, zipfile.BadZipFile, KeyError, ValueError, OSError) as error:
+        found = _first_table(path, name)
+    except _DAMAGE as error:
         raise DataError(
-            _("this workbook cannot be opened ({why}); it may be damaged or protected.").format(why=error),
+            _("this workbook cannot be opened ({why}); it may be damaged or protected.").format(
+                why=error or type(error).__name__
+            ),
             place=path.name,
             remedy=_("Save it again as .xlsx without a password, or export CSV."),
         ) from error
+    if found is None:
+        raise DataError(
+            _("the workbook holds no table; expected a header row and one row per record."),
+            place=path.name,
+            remedy=_("Export the table again."),
+        )
+    return found
+
+
+def _first_table(path: Path, name: str) -> tuple[list[str], list[list[str]], list[int]] | None:
+    with warnings.catch_warnings():
+        # Styles and validations that cannot be kept do not matter to a reader.
+        warnings.simplefilter("ignore", UserWarning)
+        book = openpyxl.load_workbook(path, read_only=True, data_only=True)
     try:
         sheets = [sheet for sheet in book.worksheets if sheet.title.strip().casefold() == name]
-        for sheet in sheets or book.worksheets:
-            found = _rows(sheet, path)
-            if found is not None:
-                return found
+        found = (_rows(sheet, path) for sheet in sheets or book.worksheets)
+        return next((table for table in found if table is not None), None)
     finally:
         book.close()
-    raise DataError(
-        _("the workbook holds no table; expected a header row and one row per record."),
-        place=path.name,
-        remedy=_("Export the table again."),
-    )
 
 
 def _rows(sheet: Any, path: Path) -> tuple[list[str], list[list[str]], list[int]] | None:

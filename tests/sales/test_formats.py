@@ -185,6 +185,29 @@ def test_unusable_files_are_named(tmp_path: Path, name: str, content: bytes, wor
     assert caught.value.remedy
 
 
+def test_damaged_workbooks_are_named(tmp_path: Path) -> None:
+    rows = _typed(sales_rows(WEEKS))
+    path = tmp_path / "sales.xlsx"
+    write_xlsx(path, [list(rows[0]), *[list(row.values()) for row in rows]])
+    whole = path.read_bytes()
+    said: list[str] = []
+    for k in range(40):
+        path.write_bytes(whole[: len(whole) * k // 40] if k % 2 else _spoilt(whole, k))
+        try:
+            _assert_whole(_loaded(tmp_path, path))
+        except DataError as error:
+            said.append(str(error))
+    assert len(said) > 20
+    assert all("sales.xlsx" in words for words in said)
+
+
+def _spoilt(data: bytes, seed: int) -> bytes:
+    rng = np.random.default_rng(seed)
+    cells = np.frombuffer(data, dtype=np.uint8).copy()
+    cells[rng.integers(0, cells.size, 30)] ^= 0x5A
+    return cells.tobytes()
+
+
 def test_missing_files(tmp_path: Path) -> None:
     with pytest.raises(DataError, match="no such file"):
         _loaded(tmp_path, tmp_path / "sales.csv")
