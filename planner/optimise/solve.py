@@ -166,6 +166,7 @@ class _Run:
                 return None
             starts.append(start)
         searches = [c.open(None, s) for c, s in zip(self.clusters, starts, strict=True)]
+        self._show_all(searches)
         for cluster, search in zip(self.clusters, searches, strict=True):
             if self.stopped():
                 break
@@ -173,8 +174,15 @@ class _Run:
             better = cluster.best_start(None, [search.states], self.settings.starts - 1, seconds)
             if better is not None:
                 search.offer(better)
+            self._show_all(searches)
         self._together(searches)
         return np.stack([s.states for s in searches]), sum(s.bound for s in searches), ()
+
+    def _show_all(self, searches: list[ClusterSearch]) -> tuple[float, float]:
+        """Stream the sum over the clusters; value and bound."""
+        value, bound = sum(s.value for s in searches), sum(s.bound for s in searches)
+        self.show(value, bound, np.stack([s.states for s in searches]))
+        return value, bound
 
     def _together(self, searches: list[ClusterSearch]) -> None:
         """Step the searches with the largest gaps until the sum is within the target.
@@ -184,8 +192,7 @@ class _Run:
         with ThreadPoolExecutor(_AT_ONCE) as pool:
             running: dict[int, Future[None]] = {}
             while True:
-                value, bound = sum(s.value for s in searches), sum(s.bound for s in searches)
-                self.show(value, bound, np.stack([s.states for s in searches]))
+                value, bound = self._show_all(searches)
                 enough = bound - value <= self.settings.gap * abs(value) or self.stopped()
                 waiting = [k for k, s in enumerate(searches) if k not in running and not s.done]
                 if not running and (enough or not waiting):
