@@ -13,6 +13,7 @@ from planner.sales.report import LoadedData
 from planner.tables.format import number, percent, sensible_decimals, span
 from planner.tables.names import ACTIONS, action_of, cluster_name
 from planner.tables.plan import action_word, states_of_today
+from planner.tables.words import beyond_history
 from planner.transfer.tally import Figure, Tally
 
 
@@ -51,7 +52,8 @@ def headline(loaded: LoadedData, tally: Tally, plan: NamedPlan, with_costs: bool
     )
     if tally.changes and figure.low <= 0.0 <= figure.high:
         said += " " + _("The interval includes no change at all.")
-    return said, changes_words(loaded, plan)
+    beyond = beyond_history(loaded, plan.states)
+    return (said, changes_words(loaded, plan), *([beyond] if beyond else []))
 
 
 def action_counts(loaded: LoadedData, plan: NamedPlan) -> list[tuple[str, Counter[str]]]:

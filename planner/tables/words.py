@@ -9,10 +9,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.base.text import _, ngettext
+from planner.plan.plans import States
 from planner.tables.effects import Floats
 from planner.tables.format import number, percent, percent_span, span
 from planner.tables.names import cluster_name
-from planner.transfer.what_if import interval
+from planner.tables.plan import cluster_of
+from planner.transfer.what_if import interval, presence
 
 if TYPE_CHECKING:
     from planner.demand.fitted import FittedModel, SegmentFinding
@@ -26,6 +28,8 @@ FEW_CHANGES = 5
 STILL_PRICES = 0.01
 FEW_STORES = 5
 PRICE_STEP = 0.01
+# Ranges so much shorter or longer than ever before are called out.
+BEYOND = 0.1
 
 
 def cautions() -> tuple[str, ...]:
@@ -44,6 +48,37 @@ def cautions() -> tuple[str, ...]:
             "medicines. Lock them as keep."
         ),
     )
+
+
+def beyond_history(loaded: LoadedData, states: States) -> str:
+    """A sentence when a plan's range is shorter or longer than stores ever had it; else "".
+
+    A store counts when its number of items in the plan lies more than a tenth outside what its own
+    weeks of the history held.
+    """
+    panel, base = loaded.panel, loaded.base
+    listed = panel.listed.sum(axis=1)
+    of_store = [listed[panel.store_index == s] for s in range(len(loaded.catalogue.stores))]
+    low = np.array([weeks.min() if weeks.size else 0 for weeks in of_store])
+    high = np.array([weeks.max() if weeks.size else 0 for weeks in of_store])
+    planned = presence(states, base.today, cluster_of(loaded)).sum(axis=1)
+    outside = (planned < (1.0 - BEYOND) * low) | (planned > (1.0 + BEYOND) * high)
+    if not outside.any():
+        return ""
+    return _(
+        "In {n} of {all} stores the plan's number of items ({planned}) lies outside anything the history "
+        "holds there ({held}): the estimate extrapolates, and its interval does not cover that."
+    ).format(
+        n=int(outside.sum()),
+        all=outside.size,
+        planned=_from_to(planned[outside], planned[outside]),
+        held=_from_to(low[outside], high[outside]),
+    )
+
+
+def _from_to(low: NDArray[np.int64], high: NDArray[np.int64]) -> str:
+    least, most = float(low.min()), float(high.max())
+    return number(least) if least == most else span(least, most)
 
 
 def notes(loaded: LoadedData, fitted: FittedModel | None) -> tuple[str, ...]:

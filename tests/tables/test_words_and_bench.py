@@ -19,6 +19,7 @@ from planner.tables.evidence import parameters_table, segments_table
 from planner.tables.names import plan_word
 from planner.tables.sales import checks_table, events_table, matches_table, reconciliation_table
 from planner.tables.words import (
+    beyond_history,
     category_price_response,
     cautions,
     evidence_words,
@@ -186,6 +187,18 @@ def test_price_effects_that_make_no_sense_are_called_out() -> None:
     still = replace(fitted.estimate, price_effect=np.zeros((1, 3)))
     said = " ".join(evidence_words(data, replace(fitted, estimate=still), transfers, past))
     assert "moved too little" in said
+
+
+def test_ranges_never_seen_before_are_called_out() -> None:
+    data = records.loaded()
+    assert beyond_history(data, records.planned()) == ""
+    short = records.now().copy()
+    short[0, :6] = 0
+    said = beyond_history(data, short)
+    # Stores S1 and S2 always had 7 items; the plan leaves one.
+    assert said.startswith("In 2 of 6 stores the plan's number of items (1)")
+    assert "(7)" in said
+    assert "extrapolates" in said
 
 
 def test_cautions_and_notes() -> None:
