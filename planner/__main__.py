@@ -3,18 +3,19 @@
 from __future__ import annotations
 
 import multiprocessing
+import os
 import sys
-
-COMMANDS = ("review", "load", "fit", "transfer", "recommend", "export")
 
 
 def main(argv: list[str] | None = None) -> int:
     """rangewright [COMMAND ... | PLAN.rangewright | --demo]; the exit code."""
     multiprocessing.freeze_support()
+    # Before numpy is imported: the matrices are small, and threads that wait for each other cost
+    # more than they bring.
+    for name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
+        os.environ.setdefault(name, "1")
     arguments = sys.argv[1:] if argv is None else argv
-    first = arguments[0] if arguments else ""
-    opens_window = not arguments or first == "--demo" or first.endswith(".rangewright")
-    if opens_window:
+    if not arguments or arguments[0] == "--demo" or arguments[0].endswith(".rangewright"):
         from planner.gui.app.start import run
 
         return run(arguments)

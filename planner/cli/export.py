@@ -6,13 +6,24 @@ import argparse
 from pathlib import Path
 
 from planner.base.errors import CallError
+from planner.base.target_file import check_target
 from planner.base.text import _
 from planner.cli.common import add_plan, opened
 from planner.cli.output import TerminalProgress, finish, say
 from planner.review import engine
 from planner.review.jobs import ExportJob
 
-OUTPUTS = (("workbook", "workbook"), ("report", "report"), ("stores_list", "stores list"))
+# Option, kind of export, endings of its file.
+OUTPUTS = (
+    ("workbook", "workbook", (".xlsx",)),
+    ("report", "report", (".pdf",)),
+    ("stores_list", "stores list", (".csv", ".txt")),
+)
+
+
+def words() -> str:
+    """What the command does."""
+    return _("write the workbook, the report or the stores' list of a kept plan")
 
 
 def add(parser: argparse.ArgumentParser) -> None:
@@ -29,20 +40,22 @@ def add(parser: argparse.ArgumentParser) -> None:
 
 def run(choices: argparse.Namespace) -> int:
     """Do it."""
-    wanted = [(kind, getattr(choices, name)) for name, kind in OUTPUTS if getattr(choices, name) is not None]
+    wanted = []
+    for option, kind, endings in OUTPUTS:
+        path = getattr(choices, option)
+        if path is not None:
+            check_target(path, endings)
+            wanted.append((kind, path))
     if not wanted:
         raise CallError(_("Nothing to write."), remedy=_("Give --workbook, --report or --stores-list."))
-    review = opened(choices.plan)
-    plan = review.plan(choices.name)
     progress = TerminalProgress()
-    for kind, path in wanted:
-        # The workbook and the report are for the head office; a stores' list is not.
-        costs = choices.with_costs or kind != "stores list"
-        engine.run_export(
-            ExportJob(kind, path, review.need_loaded(), review.need_fitted(), plan, costs), progress
-        )
-        progress.clear()
-        say(_("Written: {path}").format(path=path))
-    finish({"plan": plan.name, "files": [path for _kind, path in wanted]})
-    review.close()
+    with opened(choices.plan) as review:
+        plan, loaded, fitted = review.plan(choices.name), review.need_loaded(), review.need_fitted()
+        for kind, path in wanted:
+            # The workbook and the report are for the head office; a stores' list is not.
+            costs = choices.with_costs or kind != "stores list"
+            engine.run_export(ExportJob(kind, path, loaded, fitted, plan, costs), progress)
+            progress.clear()
+            say(_("Written: {path}").format(path=path))
+        finish({"plan": plan.name, "files": [path for _kind, path in wanted]})
     return 0

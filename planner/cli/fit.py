@@ -3,52 +3,56 @@
 from __future__ import annotations
 
 import argparse
-import sys
 
-from planner.base.errors import CallError
 from planner.base.text import _
-from planner.cli.common import add_plan, fit_answer, opened
-from planner.cli.output import TerminalProgress, finish, say
+from planner.cli.answers import fit_answer
+from planner.cli.common import add_plan, columns, opened, say_fit, whole
+from planner.cli.output import TerminalProgress, finish
 from planner.review import engine
-from planner.review.jobs import FitJob, LoadJob, request_with_segments
+from planner.review.jobs import FitJob
+
+# Fewer parameter draws give no 80 % interval worth the name.
+LEAST_DRAWS = 20
+
+
+def words() -> str:
+    """What the command does."""
+    return _("fit the share model and store it in the plan file")
 
 
 def add(parser: argparse.ArgumentParser) -> None:
     """Options."""
     add_plan(parser)
-    parser.add_argument("--model", choices=("nested", "plain"), default="nested", help=_("the share model"))
     parser.add_argument(
-        "--segment-by", default="", metavar="COLUMN[,COLUMN]", help=_("form other segments first")
+        "--model", choices=("nested", "plain"), default="nested", help=_("the share model (nested)")
     )
     parser.add_argument(
-        "--draws", type=int, default=200, metavar="R", help=_("parameter draws for intervals")
+        "--segment-by",
+        type=columns,
+        default=(),
+        metavar="COLUMN[,COLUMN]",
+        help=_("read the files again with other segments first"),
     )
-    parser.add_argument("--seed", type=int, default=1, metavar="N")
+    parser.add_argument(
+        "--draws",
+        type=whole(LEAST_DRAWS),
+        default=200,
+        metavar="R",
+        help=_("parameter draws behind the intervals (200)"),
+    )
+    parser.add_argument("--seed", type=whole(0), default=1, metavar="N", help=_("of the parameter draws (1)"))
 
 
 def run(choices: argparse.Namespace) -> int:
     """Do it."""
-    if choices.draws < 20:
-        raise CallError(
-            _("--draws {n} is too few for an 80 % interval.").format(n=choices.draws),
-            remedy=_("Use at least 20."),
-        )
-    review = opened(choices.plan)
     progress = TerminalProgress()
-    columns = tuple(part for part in choices.segment_by.split(",") if part)
-    if columns:
-        request = request_with_segments(review.need_loaded().request, columns)
-        review.accept_loaded(engine.run_load(LoadJob(request), progress))
-    fitted = engine.run_fit(
-        FitJob(review.need_loaded(), choices.model, choices.seed, choices.draws), progress
-    )
-    progress.clear()
-    review.accept_fitted(fitted)
-    review.save()
-    for words in review.words("evidence"):
-        say(words)
-    for note in fitted.notes:
-        print(note, file=sys.stderr)
-    finish(fit_answer(review))
-    review.close()
+    with opened(choices.plan) as review:
+        if choices.segment_by:
+            review.accept_loaded(engine.run_load_again(review.need_loaded(), choices.segment_by, progress))
+        job = FitJob(review.need_loaded(), choices.model, choices.seed, choices.draws)
+        review.accept_fitted(engine.run_fit(job, progress))
+        review.save()
+        progress.clear()
+        say_fit(review, ("model", "evidence"))
+        finish(fit_answer(review))
     return 0

@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import argparse
+import os
 import sys
+from typing import NoReturn
 
 from planner import __version__
 from planner.base.errors import CancelledError, RangewrightError
@@ -24,9 +26,9 @@ COMMANDS = {
 class _Parser(argparse.ArgumentParser):
     """A wrong call ends with exit code 2 and a last line of JSON."""
 
-    def error(self, message: str) -> None:  # type: ignore[override]
+    def error(self, message: str) -> NoReturn:
         self.print_usage(sys.stderr)
-        print(message, file=sys.stderr)
+        print(f"{self.prog}: {message}", file=sys.stderr)
         finish({"error": message, "exit": 2})
         raise SystemExit(2)
 
@@ -37,12 +39,13 @@ def parser() -> argparse.ArgumentParser:
         prog="rangewright",
         description=_("Which items stay, go and come in a category, and what happens to their sales."),
         epilog=_("Without a command the window opens: rangewright [PLAN.rangewright | --demo]"),
+        allow_abbrev=False,
     )
     top.add_argument("--version", action="version", version=f"rangewright {__version__}")
-    commands = top.add_subparsers(dest="command", required=True, parser_class=_Parser)
+    commands = top.add_subparsers(dest="command", required=True, parser_class=_Parser, metavar=_("COMMAND"))
     for name, module in COMMANDS.items():
-        words = (module.__doc__ or "").partition(": ")[2].splitlines()[0]
-        module.add(commands.add_parser(name, help=words, description=words))
+        words = module.words()
+        module.add(commands.add_parser(name, help=words, description=words, allow_abbrev=False))
     return top
 
 
@@ -56,6 +59,10 @@ def main(arguments: list[str]) -> int:
         return int(COMMANDS[choices.command].run(choices))
     except KeyboardInterrupt:
         return show_error(CancelledError(_("Cancelled.")))
+    except BrokenPipeError:
+        # Whoever read the output has gone; nothing can be said to them.
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return 1
     except RangewrightError as error:
         return show_error(error)
     except Exception as error:

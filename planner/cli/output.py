@@ -4,16 +4,20 @@ from __future__ import annotations
 
 import json
 import math
+import shutil
 import sys
 import tempfile
+import time
 import traceback
 from datetime import date
 from decimal import Decimal
 from pathlib import Path
 from typing import Any
 
-from planner.base.errors import RangewrightError
+from planner.base.errors import LimitsError, RangewrightError
 from planner.base.text import _
+
+_SHOWN_EVERY = 0.1
 
 
 class TerminalProgress:
@@ -21,18 +25,24 @@ class TerminalProgress:
 
     def __init__(self) -> None:
         self._shown = sys.stderr.isatty()
+        self._began = time.monotonic()
+        self._last = 0.0
 
     def report(self, step: str, fraction: float | None = None) -> None:
-        """Overwrite the line."""
-        if self._shown:
-            part = "" if fraction is None else f" {100.0 * fraction:.0f} %"
-            sys.stderr.write(f"\r\x1b[K{step}{part}")
-            sys.stderr.flush()
+        """Overwrite the line: step, part and seconds."""
+        now = time.monotonic()
+        if not self._shown or now - self._last < _SHOWN_EVERY:
+            return
+        self._last = now
+        part = "" if fraction is None else f" {100.0 * fraction:.0f} %"
+        line = f"{step}{part}, {now - self._began:.0f} s"
+        sys.stderr.write(f"\r\x1b[K{line[: shutil.get_terminal_size().columns - 1]}")
+        sys.stderr.flush()
 
     def improved(self, answer: dict[str, object]) -> None:
         """Show value and bound of the best so far."""
         value, bound = answer.get("value"), answer.get("bound")
-        if self._shown and isinstance(value, float) and isinstance(bound, float):
+        if isinstance(value, float) and isinstance(bound, float):
             self.report(_("Best so far {value:.2f}, bound {bound:.2f}").format(value=value, bound=bound))
 
     def cancelled(self) -> bool:
@@ -47,13 +57,14 @@ class TerminalProgress:
 
 
 def plain(value: Any) -> Any:
-    """A value as JSON may hold it: no NaN, no numpy, exact money as text."""
+    """A value as JSON may hold it: no NaN, no numpy; money as its shortest number."""
     if isinstance(value, dict):
         return {str(key): plain(entry) for key, entry in value.items()}
     if isinstance(value, list | tuple):
         return [plain(entry) for entry in value]
     if isinstance(value, Decimal):
-        return format(value, "f")
+        # Exact to a cent up to ten thousand billions.
+        return float(value)
     if isinstance(value, date | Path):
         return str(value)
     if hasattr(value, "tolist"):
@@ -76,7 +87,15 @@ def finish(answer: dict[str, Any]) -> None:
 def show_error(error: RangewrightError) -> int:
     """Words on standard error, JSON on the last line of standard output; the exit code."""
     print(str(error), file=sys.stderr)
-    finish({"error": error.problem, "place": error.place, "remedy": error.remedy, "exit": error.exit_code})
+    answer: dict[str, Any] = {
+        "error": error.problem,
+        "place": error.place,
+        "remedy": error.remedy,
+        "exit": error.exit_code,
+    }
+    if isinstance(error, LimitsError):
+        answer |= {"status": "impossible", "value": None, "bound": None, "gap": None}
+    finish(answer)
     return error.exit_code
 
 

@@ -6,30 +6,47 @@ import argparse
 from pathlib import Path
 
 from planner.base.errors import CallError
+from planner.base.target_file import check_target
 from planner.base.text import _
-from planner.cli.common import add_plan, opened, tally_answer
+from planner.cli.answers import transfer_answer
+from planner.cli.common import add_plan, opened
 from planner.cli.output import finish, say
-from planner.review.effects import change_from_today
-from planner.tables.csv import write_csv
-from planner.tables.format import percent, table_text
-from planner.tables.transfer import transfer_table
+from planner.review.effects import ChangeFromToday, change_from_today
+from planner.tables.csv import ENDINGS, write_csv
+from planner.tables.format import percent, percent_span, table_text
+
+_COLUMNS = ("kind", "item", "description", "before", "after", "change", "low", "high", "share")
+_MOST_ROWS = 25
+
+
+def words() -> str:
+    """What the command does."""
+    return _("where sales go when items are delisted, listed or repriced, from today; writes nothing into P")
 
 
 def add(parser: argparse.ArgumentParser) -> None:
     """Options."""
     add_plan(parser)
-    parser.add_argument("--delist", action="append", default=[], metavar="ITEM")
-    parser.add_argument("--list", action="append", default=[], metavar="ITEM")
+    for name, help_words in (
+        ("--delist", _("take these items off every list")),
+        ("--list", _("put these items on every list")),
+    ):
+        parser.add_argument(name, action="extend", nargs="+", default=[], metavar="ITEM", help=help_words)
     parser.add_argument(
-        "--price", action="append", default=[], metavar="ITEM=VALUE", help=_("new regular price")
+        "--price",
+        action="extend",
+        nargs="+",
+        default=[],
+        metavar="ITEM=VALUE",
+        help=_("new regular price, VAT included"),
     )
-    parser.add_argument("--cluster", default="", metavar="C", help=_("change in this cluster only"))
+    parser.add_argument("--cluster", metavar="C", help=_("make the change in this cluster only"))
     parser.add_argument("--csv", type=Path, metavar="F")
 
 
 def prices(texts: list[str]) -> dict[str, float]:
     """ITEM=VALUE as a mapping."""
-    found = {}
+    found: dict[str, float] = {}
     for text in texts:
         item, equals, value = text.rpartition("=")
         try:
@@ -41,30 +58,40 @@ def prices(texts: list[str]) -> dict[str, float]:
                 _("--price {text} cannot be read.").format(text=text),
                 remedy=_("Write it as --price ITEM=VALUE with a price above 0 and a decimal point."),
             )
+        if item in found:
+            raise CallError(_("--price names {item} twice.").format(item=item))
         found[item] = price
     return found
+
+
+def _say_change(change: ChangeFromToday) -> None:
+    if not change.changed.any():
+        say(_("Nothing changes: the items already stand as wanted."))
+        return
+    say(table_text(change.receivers, _COLUMNS, rows=_MOST_ROWS))
+    if change.leaves is None:
+        return
+    share, low, high = change.leaves
+    if share >= 0.0:
+        said = _("Leaves the category: {share} of the units of the changed items (80 % interval {span}).")
+    else:
+        said = _("Comes into the category: {share} of the units of the changed items (80 % interval {span}).")
+        share, low, high = -share, -high, -low
+    say(said.format(share=percent(share, 1), span=percent_span(low, high, 1)))
 
 
 def run(choices: argparse.Namespace) -> int:
     """Do it; nothing is written into the plan file."""
     if not (choices.delist or choices.list or choices.price):
         raise CallError(_("Nothing to change."), remedy=_("Give --delist, --list or --price."))
-    review = opened(choices.plan)
-    change = change_from_today(review, choices.delist, choices.list, prices(choices.price), choices.cluster)
-    table = transfer_table(review.need_loaded().catalogue, change.tally.effects, change.changed)
     if choices.csv is not None:
-        write_csv(table, choices.csv)
-    say(table_text(change.receivers, rows=25))
-    leaves = change.leaves
-    if leaves is not None:
-        say(
-            _("Leaves the category: {share} of the units of the changed items.").format(
-                share=percent(leaves, 1)
-            )
+        check_target(choices.csv, ENDINGS)
+    with opened(choices.plan) as review:
+        change = change_from_today(
+            review, choices.delist, choices.list, prices(choices.price), choices.cluster
         )
-    answer = tally_answer(change.tally)
-    answer["leaves"] = leaves
-    answer["csv"] = choices.csv
-    finish(answer)
-    review.close()
+        if choices.csv is not None:
+            write_csv(change.transfer, choices.csv)
+        _say_change(change)
+        finish({**transfer_answer(review, change), "csv": choices.csv})
     return 0

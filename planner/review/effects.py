@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,8 +11,9 @@ from numpy.typing import NDArray
 from planner.base.errors import CallError
 from planner.base.text import _
 from planner.review.review import RangeReview
-from planner.tables.receivers import receivers_table
+from planner.tables.receivers import cluster_positions, receivers_table
 from planner.tables.table import Table
+from planner.tables.transfer import transfer_table
 from planner.transfer.tally import Tally, tally
 from planner.transfer.what_if import IN, OUT
 
@@ -20,16 +22,19 @@ from planner.transfer.what_if import IN, OUT
 class ChangeFromToday:
     """tally with its effects; changed (C, J): what was delisted, listed or repriced.
 
-    leaves: part of the changed items' lost units that leaves the category, None when none are lost.
+    transfer: the table of the transfer command; receivers: the one for people.
+    leaves: (share, low, high) of the changed items' units that leaves the category (negative:
+    comes into it), with its 80 % interval; None when nothing moves.
     """
 
     tally: Tally
     changed: NDArray[np.bool_]
+    transfer: Table
     receivers: Table
-    leaves: float | None
+    leaves: tuple[float, float, float] | None
 
 
-def _check_items(review: RangeReview, items: list[str]) -> None:
+def _positions(review: RangeReview, items: Sequence[str]) -> dict[str, int]:
     index = review.need_loaded().catalogue.item_index()
     unknown = [item for item in items if item not in index]
     if unknown:
@@ -37,36 +42,65 @@ def _check_items(review: RangeReview, items: list[str]) -> None:
             _("Unknown item '{item}'.").format(item=unknown[0]),
             remedy=_("Use a code of the items table, with its leading zeros."),
         )
+    return {item: index[item] for item in items}
+
+
+def _states(
+    review: RangeReview, delist: Sequence[str], listed: Sequence[str], rows: list[int]
+) -> NDArray[np.int8]:
+    """Today's states (C, J) with the changes made in the clusters ``rows``."""
+    both = sorted(set(delist) & set(listed))
+    if both:
+        raise CallError(
+            _("{item} is both delisted and listed.").format(item=both[0]), remedy=_("Name it once.")
+        )
+    states = review.today_states()
+    for j in _positions(review, delist).values():
+        states[rows, j] = OUT
+    for j in _positions(review, listed).values():
+        states[review.open_to(j, rows), j] = IN
+    return states
+
+
+def _price_ratio(review: RangeReview, prices: Mapping[str, float], rows: list[int]) -> NDArray[np.float64]:
+    """New over today's regular price (C, J), 1 where nothing changes."""
+    price = review.need_loaded().base.price
+    ratio = np.ones(price.shape)
+    for item, j in _positions(review, list(prices)).items():
+        if not (price[rows, j] > 0.0).all():
+            raise CallError(
+                _("{item} has no price today, so a new one cannot be compared.").format(item=item),
+                remedy=_("Give it a price in the offers table."),
+            )
+        ratio[rows, j] = prices[item] / price[rows, j]
+    return ratio
 
 
 def change_from_today(
-    review: RangeReview, delist: list[str], listed: list[str], prices: dict[str, float], cluster: str
+    review: RangeReview,
+    delist: Sequence[str],
+    listed: Sequence[str],
+    prices: Mapping[str, float],
+    cluster: str | None = None,
 ) -> ChangeFromToday:
-    """Delist, list and reprice from today, in one cluster or in all ("").
+    """Delist, list and reprice from today, in one cluster or in all (None).
 
-    An item that is not listed (or already listed) somewhere simply stays so there.  Raises
-    CallError for unknown codes and clusters.
+    An item that is not listed (or already listed) somewhere simply stays so there; an offer is
+    listed where it is offered.  Raises CallError for unknown codes and clusters.
     """
     loaded, fitted = review.need_loaded(), review.need_fitted()
-    _check_items(review, [*delist, *listed, *prices])
-    clusters, index = loaded.catalogue.clusters, loaded.catalogue.item_index()
-    if cluster and cluster not in clusters:
-        raise CallError(
-            _("Unknown cluster '{name}'.").format(name=cluster),
-            remedy=_("Clusters are: {names}.").format(names=", ".join(clusters)),
-        )
-    rows = [clusters.index(cluster)] if cluster else list(range(len(clusters)))
-    today = review.today_states()
-    states = today.copy()
-    for items, state in ((delist, OUT), (listed, IN)):
-        for item in items:
-            states[rows, index[item]] = state
-    ratio = np.ones(loaded.base.price.shape)
-    for item, price in prices.items():
-        ratio[rows, index[item]] = price / loaded.base.price[rows, index[item]]
-    changed = (states != today) | (ratio != 1.0)
+    rows = cluster_positions(loaded.catalogue.clusters, cluster)
+    states = _states(review, delist, listed, rows)
+    ratio = _price_ratio(review, prices, rows)
+    changed: NDArray[np.bool_] = (states != review.today_states()) | (ratio != 1.0)
     found = tally(fitted, loaded.base, states, ratio if prices else None)
-    moved = found.effects.after - found.effects.before
-    lost = -float(moved[changed].clip(max=0.0).sum())
-    leaves = float(-moved.sum() / lost) if lost > 0.0 else None
-    return ChangeFromToday(found, changed, receivers_table(loaded, found.effects, "units", changed), leaves)
+    table = transfer_table(loaded.catalogue, found.effects, changed)
+    last = [table.column(key).values[-1] for key in ("share", "low", "high")]
+    leaves = tuple(float(part) for part in last if isinstance(part, float))
+    return ChangeFromToday(
+        found,
+        changed,
+        table,
+        receivers_table(loaded, found.effects, "units", changed, cluster),
+        (leaves[0], leaves[1], leaves[2]) if len(leaves) == 3 else None,
+    )

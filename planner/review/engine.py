@@ -8,11 +8,11 @@ from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from planner.base.errors import CallError, LimitsError
+from planner.base.errors import CallError, DataError, LimitsError
 from planner.base.progress import Progress
 from planner.base.text import _
 from planner.plan.plans import NamedPlan, PlanRung, SolverOutcome
-from planner.review.jobs import ExportJob, FitJob, LoadJob, RecommendJob
+from planner.review.jobs import ExportJob, FitDone, FitJob, LoadJob, RecommendJob
 
 if TYPE_CHECKING:
     from planner.demand.fitted import FittedModel
@@ -57,20 +57,43 @@ def run_load_folder(folder: Path, progress: Progress) -> LoadedData:
     return run_load(request_from_folder(folder), progress)
 
 
-def run_fit(job: FitJob, progress: Progress) -> FittedModel:
-    """Fit the share model."""
+def run_load_again(loaded: LoadedData, segment_by: tuple[str, ...], progress: Progress) -> LoadedData:
+    """Read the same files with other segments.  DataError when they are not what was loaded before."""
+    again = run_load(LoadJob(replace(loaded.request, segment_by=segment_by)), progress)
+    before, now = loaded.report, again.report
+    if (before.rows_read, before.money_read) != (now.rows_read, now.money_read):
+        raise DataError(
+            _(
+                "the sales file holds {rows} rows and {money} money; {old_rows} and {old_money} were loaded."
+            ).format(
+                rows=now.rows_read,
+                money=now.money_read,
+                old_rows=before.rows_read,
+                old_money=before.money_read,
+            ),
+            place=str(loaded.request.sales),
+            remedy=_("The file has changed since. Load it again first."),
+        )
+    return again
+
+
+def run_fit(job: FitJob, progress: Progress) -> FitDone:
+    """Fit the share model and compute every single delisting."""
     from planner.demand.nested import fit_nested
     from planner.demand.settings import NestedSettings
 
+    loaded = job.loaded
     settings = NestedSettings(model=job.model, seed=job.seed, draws=job.draws)
-    return fit_nested(job.loaded.panel, job.loaded.catalogue, job.loaded.base, settings, progress)
+    fitted = fit_nested(loaded.panel, loaded.catalogue, loaded.base, settings, progress)
+    progress.report(_("Computing transfers"))
+    return FitDone(fitted, delistings_of(loaded, fitted))
 
 
 def run_recommend(job: RecommendJob, progress: Progress) -> NamedPlan:
     """Find the best assortment; LimitsError when none meets the limits."""
     from planner.optimise.problem import SolverSettings, Status
     from planner.optimise.solve import best_assortment
-    from planner.review.problem import pose_problem
+    from planner.review.problem import listed_again, pose_problem
 
     posed = pose_problem(job.loaded, job.fitted, job.limits)
     settings = SolverSettings(seconds=job.seconds, gap=job.gap, seed=job.seed)
@@ -92,22 +115,24 @@ def run_recommend(job: RecommendJob, progress: Progress) -> NamedPlan:
         limits=replace(job.limits, goal=posed.goal),
         outcome=outcome,
         rungs=tuple(PlanRung(r.changes, r.value, r.bound, r.states) for r in found.rungs),
-        notes=" ".join(posed.notes),
+        notes=" ".join((*posed.notes, *listed_again(job.loaded, found.states))),
     )
 
 
 def run_export(job: ExportJob, progress: Progress) -> Path:
     """Write the workbook, the stores' list or the report."""
-    from planner.export.lists import write_stores_list
-    from planner.export.report import write_report
-    from planner.export.workbook import write_workbook
-
     progress.report(_("Writing {name}").format(name=job.path.name))
     if job.kind == "workbook":
+        from planner.export.workbook import write_workbook
+
         write_workbook(job.path, job.loaded, job.fitted, job.plan, job.with_costs)
     elif job.kind == "stores list":
+        from planner.export.lists import write_stores_list
+
         write_stores_list(job.path, job.loaded, job.plan, job.with_costs)
     elif job.kind == "report":
+        from planner.export.report import write_report
+
         write_report(job.path, job.loaded, job.fitted, job.plan, job.with_costs)
     else:
         raise CallError(_("Unknown kind of export '{kind}'.").format(kind=job.kind))
@@ -153,7 +178,7 @@ def request_from_folder(folder: Path) -> LoadJob:
     """A load job for a folder that holds sales.*, items.* and more."""
     from planner.sales.load import request_from_folder as request
 
-    return LoadJob(request(folder))
+    return LoadJob(request(folder.absolute()))
 
 
 def write_set_aside(path: Path, loaded: LoadedData) -> None:

@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, field
 
 from planner.plan.limits import Limits
 from planner.plan.plans import NamedPlan, States
 
 MOST_STEPS = 500
+
+# Which kind of change stands for which part of a snapshot.
+_KINDS = (("states", "states"), ("limits", "limits"), ("plans", "plans"), ("reasons", "states"))
 
 
 @dataclass(frozen=True)
@@ -18,6 +22,13 @@ class Snapshot:
     limits: Limits = field(default_factory=Limits)
     plans: tuple[NamedPlan, ...] = ()
     reasons: tuple[tuple[str, str, str], ...] = ()
+
+
+def changed_kinds(before: Snapshot, after: Snapshot) -> frozenset[str]:
+    """Kinds of what differs between two snapshots, and "history"."""
+    # Snapshots share the parts that a command left alone.
+    found = {kind for part, kind in _KINDS if getattr(before, part) is not getattr(after, part)}
+    return frozenset(found | {"history"})
 
 
 @dataclass
@@ -48,6 +59,12 @@ class History:
         self.past.append((label, self.present))
         self.present = after
         return label
+
+    def rewrite(self, change: Callable[[Snapshot], Snapshot]) -> None:
+        """Apply ``change`` to every snapshot, before and after; nothing that undo would take back."""
+        self.past = [(label, change(snapshot)) for label, snapshot in self.past]
+        self.future = [(label, change(snapshot)) for label, snapshot in self.future]
+        self.present = change(self.present)
 
     def restart(self, snapshot: Snapshot) -> None:
         """A new document: nothing to undo."""

@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from planner.base.errors import CallError
+from planner.base.text import _
 from planner.plan.limits import Limits
 from planner.plan.plans import NamedPlan
 from planner.sales.request import LoadRequest
@@ -14,6 +16,7 @@ from planner.sales.request import LoadRequest
 if TYPE_CHECKING:
     from planner.demand.fitted import FittedModel
     from planner.sales.report import LoadedData
+    from planner.transfer.delistings import DelistingTransfers
 
 
 @dataclass(frozen=True)
@@ -31,6 +34,14 @@ class FitJob:
     model: str = "nested"
     seed: int = 1
     draws: int = 200
+
+
+@dataclass(frozen=True)
+class FitDone:
+    """A fit with what every view of it shows first, so that the window need not compute it."""
+
+    fitted: FittedModel
+    delistings: DelistingTransfers
 
 
 @dataclass(frozen=True)
@@ -64,25 +75,27 @@ def load_request(
     category: str = "",
     segment_by: tuple[str, ...] = (),
 ) -> LoadRequest:
-    """A request for chosen files, by table name; sales and items are needed."""
-    sales, items = files["sales"], files["items"]
-    assert sales is not None
-    assert items is not None
+    """A request for chosen files, by table name; sales and items are needed.
+
+    Paths become absolute, so that the request means the same files from another folder.
+    """
+    given = {name: path.absolute() for name, path in files.items() if path is not None}
+    missing = [name for name in ("sales", "items") if name not in given]
+    if missing:
+        raise CallError(
+            _("no file for {names} is given.").format(names=_(" and ").join(missing)),
+            remedy=_("Choose the sales history and the items table."),
+        )
     return LoadRequest(
-        sales,
-        items,
-        stores=files.get("stores"),
-        shoppers=files.get("shoppers"),
-        costs=files.get("costs"),
-        ranges=files.get("ranges"),
-        offers=files.get("offers"),
-        successors=files.get("successors"),
+        given["sales"],
+        given["items"],
+        stores=given.get("stores"),
+        shoppers=given.get("shoppers"),
+        costs=given.get("costs"),
+        ranges=given.get("ranges"),
+        offers=given.get("offers"),
+        successors=given.get("successors"),
         matches=matches,
         category=category,
         segment_by=segment_by,
     )
-
-
-def request_with_segments(request: LoadRequest, segment_by: tuple[str, ...]) -> LoadRequest:
-    """The same files with other segments."""
-    return replace(request, segment_by=segment_by)

@@ -9,8 +9,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from planner.base.errors import CallError
-from planner.base.text import _
-from planner.optimise.problem import AssortmentProblem
+from planner.base.text import _, ngettext
+from planner.optimise.problem import OUT, AssortmentProblem
 from planner.plan.limits import GOALS, Limits
 
 if TYPE_CHECKING:
@@ -48,19 +48,65 @@ def goal_values(loaded: LoadedData, goal: str) -> tuple[Floats, str, tuple[str, 
         return np.ones_like(base.price), goal, ()
     if goal == "sales":
         return np.nan_to_num(base.net_price), goal, ()
-    missing = [
-        item.code
-        for item, cost in zip(loaded.catalogue.items, base.cost, strict=True)
-        if not np.isfinite(cost)
-    ]
-    if len(missing) == len(loaded.catalogue.items):
+    unknown = np.isnan(base.cost)
+    if unknown.all():
         said = _("No cost is known, so the goal is sales instead of margin. Add costs to pursue margin.")
         return np.nan_to_num(base.net_price), "sales", (said,)
     notes: tuple[str, ...] = ()
-    if missing:
-        said = _("{n} items have no cost and count with margin 0: {items}. Add their costs.")
-        notes = (said.format(n=len(missing), items=", ".join(missing[:10])),)
+    items = loaded.catalogue.items
+    blank = [item.code for item, no_cost in zip(items, unknown, strict=True) if no_cost and not item.is_offer]
+    if blank:
+        said = ngettext(
+            "{n} item has no cost and counts with margin 0: {items}. Add its cost.",
+            "{n} items have no cost and count with margin 0: {items}. Add their costs.",
+            len(blank),
+        )
+        notes = (said.format(n=len(blank), items=named(blank)),)
     return np.nan_to_num(base.margin), goal, notes
+
+
+def named(codes: list[str], most: int = 10) -> str:
+    """The first few codes and how many more there are."""
+    if len(codes) <= most:
+        return ", ".join(codes)
+    return _("{names} and {n} more").format(names=", ".join(codes[:most]), n=len(codes) - most)
+
+
+def _not_to_be_listed(loaded: LoadedData, fitted: FittedModel) -> tuple[Bools, tuple[str, ...]]:
+    """(mask (J,) of items whose listing cannot be judged, notes).  None of them is on a list today.
+
+    Offers need a price, and a cost once any cost is known; every item needs an estimate of demand.
+    """
+    base, items = loaded.base, loaded.catalogue.items
+    offer = np.array([item.is_offer for item in items])
+    unpriced = offer & ~(base.price > 0.0).all(axis=0)
+    costless = offer & np.isnan(base.cost) & ~np.isnan(base.cost).all() & ~unpriced
+    attraction = fitted.estimate.attraction[0]
+    listed = base.today.any(axis=0)
+    unknown = ~(np.isfinite(attraction) & (attraction > 0.0)).all(axis=0) & ~listed & ~unpriced & ~costless
+    notes = []
+    for mask, text in (
+        (unpriced, _("Offers without a price are left out: {items}.")),
+        (costless, _("Offers without a cost are left out: {items}.")),
+        (unknown, _("Items whose demand cannot be estimated are not listed: {items}.")),
+    ):
+        codes = [item.code for item, out in zip(items, mask, strict=True) if out]
+        if codes:
+            notes.append(text.format(items=named(codes)))
+    return unpriced | costless | unknown, tuple(notes)
+
+
+def listed_again(loaded: LoadedData, states: NDArray[np.int8]) -> tuple[str, ...]:
+    """A note on items of the plan ``states`` (C, J) that were sold before but are on no list today."""
+    back = ~loaded.base.today.any(axis=0) & (states != OUT).any(axis=0)
+    items = loaded.catalogue.items
+    codes = [item.code for item, is_back in zip(items, back, strict=True) if is_back and not item.is_offer]
+    if not codes:
+        return ()
+    said = _(
+        "Sold before, on no list today, listed again by the plan: {items}. Lock as never what cannot be had."
+    )
+    return (said.format(items=named(codes)),)
 
 
 def check_codes(loaded: LoadedData, limits: Limits) -> None:
@@ -78,8 +124,9 @@ def check_codes(loaded: LoadedData, limits: Limits) -> None:
                 place=lock.item,
                 remedy=_("Use one of: {kinds}.").format(kinds=", ".join(LOCKS)),
             )
-    for name in [lock.cluster for lock in limits.locks] + [limit.cluster for limit in limits.clusters]:
-        if name and name not in clusters:
+    locked = [lock.cluster for lock in limits.locks if lock.cluster]
+    for name in [*locked, *(limit.cluster for limit in limits.clusters)]:
+        if name not in clusters:
             raise CallError(
                 _("Unknown cluster '{name}'.").format(name=name),
                 remedy=_("Clusters are: {names}.").format(names=", ".join(clusters)),
@@ -133,6 +180,8 @@ def pose_problem(loaded: LoadedData, fitted: FittedModel, limits: Limits) -> Pos
         if limit.max_items is not None:
             most[c] = limit.max_items
     masks = _locks(loaded, limits, listed)
+    left_out, more = _not_to_be_listed(loaded, fitted)
+    masks["never"] |= left_out
     problem = AssortmentProblem(
         demand=fitted.estimate,
         today=base.today,
@@ -150,4 +199,4 @@ def pose_problem(loaded: LoadedData, fitted: FittedModel, limits: Limits) -> Pos
         cluster_names=catalogue.clusters,
         store_names=tuple(store.code for store in catalogue.stores),
     )
-    return PosedProblem(problem, goal, notes)
+    return PosedProblem(problem, goal, (*notes, *more))

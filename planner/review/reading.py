@@ -13,6 +13,7 @@ from planner.plan.limits import ItemLock
 from planner.review import engine
 from planner.tables.bench import bench_table
 from planner.tables.evidence import parameters_table, segments_table
+from planner.tables.format import number, percent
 from planner.tables.ladder import ladder_table
 from planner.tables.limits import limits_table
 from planner.tables.plan import item_list_table, plan_table, plans_compared_table
@@ -101,12 +102,49 @@ def evidence(review: RangeReview) -> tuple[str, ...]:
     return evidence_words(loaded, fitted, review.delistings(), engine.history_of(loaded))
 
 
+def _model(review: RangeReview) -> tuple[str, ...]:
+    """Which model and what it says of the average delisting, in a sentence or two."""
+    loaded, fitted, found = review.need_loaded(), review.need_fitted(), review.delistings()
+    units = np.nan_to_num(found.units)
+    segment = np.array(loaded.catalogue.segment_of_item())
+
+    def stays(mask: np.ndarray[Any, np.dtype[np.bool_]]) -> float:
+        return float((np.nan_to_num(found.stays) * units)[mask].sum() / units[mask].sum())
+
+    said = [
+        _("{model}, {shoppers}, fitted in {seconds} s on {markets} store-weeks.").format(
+            model=_("Plain share model") if fitted.model == "plain" else _("Nested share model"),
+            shoppers=_("with shopper counts") if fitted.with_shoppers else _("without shopper counts"),
+            seconds=number(fitted.seconds, 1),
+            markets=number(loaded.panel.n_markets),
+        )
+    ]
+    sold = [g for g in range(len(loaded.catalogue.segments)) if units[segment == g].sum() > 0.0]
+    if sold:
+        parts = sorted((stays(segment == g), loaded.catalogue.segments[g]) for g in sold)
+        said.append(
+            _(
+                "When an item is delisted, an estimated {share} of its units stays in the category on "
+                "average (from {low} in {first} to {high} in {last})."
+            ).format(
+                share=percent(stays(units > 0.0)),
+                low=percent(parts[0][0]),
+                first=parts[0][1],
+                high=percent(parts[-1][0]),
+                last=parts[-1][1],
+            )
+        )
+    return tuple(said)
+
+
 def words(review: RangeReview, key: str) -> tuple[str, ...]:
-    """Sentences that need no fit: "cautions", "notes"; "evidence" is empty before a fit."""
+    """Sentences: "cautions", "notes", "model"; "evidence" is empty before a fit."""
     if key == "cautions":
         return cautions()
     if key == "notes":
         return notes(review.loaded, review.fitted) if review.loaded is not None else ()
+    if key == "model":
+        return _model(review)
     if key == "evidence":
         return ()
     raise CallError(_("There are no words called '{key}'.").format(key=key))

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import ExitStack, contextmanager
 from dataclasses import replace
 from datetime import UTC, datetime
 from pathlib import Path
@@ -15,8 +16,10 @@ from planner.base.text import _
 from planner.plan.limits import ItemLock, Limits
 from planner.plan.plans import NamedPlan, PlanRung, SolverOutcome, States
 from planner.review import engine, reading
-from planner.review.changes import Change
-from planner.review.history import History, Snapshot
+from planner.review.carry_over import carried_over, kept_reasons, marked_as_earlier_fit
+from planner.review.changes import KINDS, Change
+from planner.review.history import History, Snapshot, changed_kinds
+from planner.review.jobs import FitDone
 from planner.review.problem import LOCKS, check_codes
 from planner.tables.table import Table
 from planner.transfer.tally import Tally
@@ -129,6 +132,10 @@ class RangeReview:
             raise CallError(_("No share model is fitted."), remedy=_("Fit the share model first."))
         return self._fitted
 
+    def has_costs(self) -> bool:
+        """Any cost is known, so there is a margin to speak of."""
+        return bool(np.isfinite(self.need_loaded().base.margin).any())
+
     def _need_states(self) -> States:
         self.need_loaded()
         states = self.states
@@ -173,38 +180,37 @@ class RangeReview:
             )
         return [clusters.index(cluster)]
 
+    def open_to(self, j: int, rows: list[int]) -> list[int]:
+        """Those of the clusters ``rows`` in which item j may be listed; CallError when there is none."""
+        catalogue = self.need_loaded().catalogue
+        offered_to = catalogue.items[j].offered_to
+        found = [c for c in rows if not offered_to or catalogue.clusters[c] in offered_to]
+        if not found:
+            raise CallError(
+                _("{item} is not offered to this cluster.").format(item=catalogue.items[j].code),
+                remedy=_("It is offered to: {names}.").format(names=", ".join(offered_to)),
+            )
+        return found
+
     def set_state(self, item: str, cluster: str, state: int) -> Change:
-        """Put an item IN, OUT or AS_TODAY in one cluster ("" = every)."""
+        """Put an item IN, OUT or AS_TODAY in one cluster ("": in every one that it is open to)."""
         j, rows = self._position(item), self._clusters(cluster)
         today = self.today_states()
+        if state == IN:
+            rows = self.open_to(j, rows)
         states = self._need_states().copy()
-        for c in rows:
-            # As today means the state that leaves the cluster's stores alone.
-            states[c, j] = today[c, j] if state == AS_TODAY else state
+        # As today means the state that leaves the cluster's stores alone.
+        states[rows, j] = today[rows, j] if state == AS_TODAY else state
         names = {IN: _("List {item}"), OUT: _("Delist {item}"), AS_TODAY: _("Leave {item} as today")}
         return self._do(names[state].format(item=item), {"states"}, (item,), states=states)
 
     def toggle(self, item: str, cluster: str = "") -> Change:
         """Tick or untick: off every list when it is on one of them, else back to today (or listed)."""
         j, rows = self._position(item), self._clusters(cluster)
-        states, today = self._need_states(), self.today_states()
-        if any(states[c, j] != OUT for c in rows):
+        if (self._need_states()[rows, j] != OUT).any():
             return self.set_state(item, cluster, OUT)
-        if any(today[c, j] != OUT for c in rows):
-            return self.set_state(item, cluster, AS_TODAY)
-        offer = self.need_loaded().catalogue.items[j]
-        open_to = [c for c in rows if not offer.offered_to or self._name(c) in offer.offered_to]
-        if not open_to:
-            raise CallError(
-                _("{item} is not offered to this cluster.").format(item=item),
-                remedy=_("It is offered to: {names}.").format(names=", ".join(offer.offered_to)),
-            )
-        changed = states.copy()
-        changed[open_to, j] = IN
-        return self._do(_("List {item}").format(item=item), {"states"}, (item,), states=changed)
-
-    def _name(self, c: int) -> str:
-        return self.need_loaded().catalogue.clusters[c]
+        listed = (self.today_states()[rows, j] != OUT).any()
+        return self.set_state(item, cluster, AS_TODAY if listed else IN)
 
     def set_lock(self, item: str, kind: str | None, cluster: str = "", reason: str = "") -> Change:
         """Lock an item ("keep", "never", "as today"), or take its locks off (None)."""
@@ -307,15 +313,18 @@ class RangeReview:
         """Take the last command back."""
         if not self.can_undo:
             raise CallError(_("There is nothing to undo."))
-        label = self._history.undo()
-        return self._tell(Change(frozenset({"states", "limits", "plans", "history"}), label))
+        return self._move(self._history.undo)
 
     def redo(self) -> Change:
         """Do the last undone command again."""
         if not self.can_redo:
             raise CallError(_("There is nothing to redo."))
-        label = self._history.redo()
-        return self._tell(Change(frozenset({"states", "limits", "plans", "history"}), label))
+        return self._move(self._history.redo)
+
+    def _move(self, step: Callable[[], str]) -> Change:
+        before = self._history.present
+        label = step()
+        return self._tell(Change(changed_kinds(before, self._history.present), label))
 
     # -- results of jobs ---------------------------------------------------------------------
 
@@ -323,26 +332,29 @@ class RangeReview:
         self._delistings, self._words, self._tally = None, None, None
 
     def accept_loaded(self, loaded: LoadedData) -> Change:
-        """New data: the fit, the plan in work and kept plans of other data go; locks that still fit stay."""
+        """New data: the fit and the plan in work go, what still fits of limits and kept plans stays.
+
+        Not undoable.  The label says what was lost.
+        """
+        old = self._loaded.catalogue if self._loaded is not None else None
         self._loaded, self._fitted = loaded, None
         self._forget_caches()
-        items = loaded.catalogue.item_index()
-        kept = tuple(
-            lock
-            for lock in self.limits.locks
-            if lock.item in items and (not lock.cluster or lock.cluster in loaded.catalogue.clusters)
-        )
-        limits = Limits(goal=self.limits.goal, locks=kept)
-        self._history.restart(Snapshot(states=self.today_states(), limits=limits))
-        kinds = frozenset({"data", "fit", "states", "limits", "plans", "history"})
-        return self._tell(Change(kinds, _("Load sales")))
+        snapshot, lost = carried_over(self._history.present, old, loaded.catalogue, self.today_states())
+        self._history.restart(snapshot)
+        label = _("Load sales (dropped: {lost})").format(lost=lost) if lost else _("Load sales")
+        return self._tell(Change(KINDS - {"file"}, label))
 
-    def accept_fitted(self, fitted: FittedModel) -> Change:
-        """A new fit of the loaded data."""
+    def accept_fitted(self, done: FittedModel | FitDone) -> Change:
+        """A new fit of the loaded data.  Not undoable."""
         self.need_loaded()
-        self._fitted = fitted
+        if self._fitted is not None:
+            self._history.rewrite(marked_as_earlier_fit)
         self._forget_caches()
-        return self._tell(Change(frozenset({"fit", "states"}), _("Fit the share model")))
+        if isinstance(done, FitDone):
+            self._fitted, self._delistings = done.fitted, done.delistings
+        else:
+            self._fitted = done
+        return self._tell(Change(frozenset({"fit", "states", "plans"}), _("Fit the share model")))
 
     def accept_recommended(self, plan: NamedPlan) -> Change:
         """Keep a recommended plan; today and the plan in work stay as they are."""
@@ -397,12 +409,8 @@ class RangeReview:
         self._loaded, self._fitted, self._path = None, None, None
         self._forget_caches()
         self._history.restart(Snapshot())
-        change = self._tell(
-            Change(frozenset({"data", "fit", "states", "limits", "plans", "history", "file"}), _("New")),
-            dirty=False,
-        )
         self._dirty = False
-        return change
+        return self._tell(Change(KINDS, _("New")), dirty=False)
 
     def _release(self) -> None:
         if self._lock is not None:
@@ -415,45 +423,49 @@ class RangeReview:
 
     def open(self, path: Path) -> Change:
         """Open a plan file; it is held until another is opened or the review is closed."""
-        lock = self._lock if self._path == path and self._lock is not None else engine.lock_plan_file(path)
-        try:
+        path = path.resolve()
+        with self._held(path):
             contents = engine.read_plan_file(path)
-        except BaseException:
-            if lock is not self._lock:
-                lock.release()
-            raise
-        if lock is not self._lock:
-            self._release()
-        self._lock, self._path = lock, path
+            reasons = kept_reasons(contents.settings, path)
+        self._path = path
         self._loaded, self._fitted = contents.loaded, contents.fitted
         self._forget_caches()
-        reasons = tuple(tuple(entry) for entry in contents.settings.get("reasons", ()))
-        self._history.restart(Snapshot(contents.states, contents.limits, contents.plans, reasons))
-        kinds = frozenset({"data", "fit", "states", "limits", "plans", "history", "file"})
-        change = self._tell(Change(kinds, _("Open")), dirty=False)
+        states = contents.states
+        if states is None and self._loaded is not None:
+            states = self.today_states()
+        self._history.restart(Snapshot(states, contents.limits, contents.plans, reasons))
         self._dirty = False
-        return change
+        return self._tell(Change(KINDS, _("Open")), dirty=False)
 
     def save(self, path: Path | None = None) -> Change:
         """Save to ``path``, or to the file it came from."""
-        target = path if path is not None else self._path
+        target = path.resolve() if path is not None else self._path
         if target is None:
             raise CallError(_("The plan has no file yet."), remedy=_("Save it under a name."))
-        if self._lock is None or target != self._path:
-            lock = engine.lock_plan_file(target)
-            self._release()
-            self._lock = lock
         present = self._history.present
-        engine.write_plan_file(
-            target,
-            {
-                "loaded": self._loaded,
-                "fitted": self._fitted,
-                "states": present.states,
-                "limits": present.limits,
-                "plans": present.plans,
-                "settings": {"reasons": [list(entry) for entry in present.reasons]},
-            },
-        )
+        contents: dict[str, object] = {
+            "loaded": self._loaded,
+            "fitted": self._fitted,
+            "states": present.states,
+            "limits": present.limits,
+            "plans": present.plans,
+            "settings": {"reasons": present.reasons},
+        }
+        with self._held(target):
+            engine.write_plan_file(target, contents)
         self._path, self._dirty = target, False
         return self._tell(Change(frozenset({"file"}), _("Save")), dirty=False)
+
+    @contextmanager
+    def _held(self, path: Path) -> Iterator[None]:
+        """Hold ``path`` in place of the present file, unless the block fails."""
+        if self._lock is not None and path == self._path:
+            yield
+            return
+        with ExitStack() as undo:
+            lock = engine.lock_plan_file(path)
+            undo.callback(lock.release)
+            yield
+            undo.pop_all()
+        self._release()
+        self._lock = lock
