@@ -16,12 +16,11 @@ from pytestqt.qtbot import QtBot
 
 from planner.base.paths import demo_folder
 from planner.base.progress import NoProgress
-from planner.demand.fitted import FittedModel
 from planner.gui.app import start
 from planner.gui.app.main_window import MainWindow
 from planner.gui.theme.palettes import dark_palette, light_palette
 from planner.review import engine
-from planner.review.jobs import FitJob
+from planner.review.jobs import FitDone, FitJob
 from planner.sales.report import LoadedData
 
 
@@ -65,13 +64,13 @@ def demo() -> LoadedData:
 
 
 @pytest.fixture(scope="session")
-def fit(demo: LoadedData) -> FittedModel:
-    """A plain fit of the demo with few draws: enough for every screen."""
-    return engine.run_fit(FitJob(demo, "nested", draws=60), NoProgress())
+def fit(demo: LoadedData) -> FitDone:
+    """A fit of the demo, done once."""
+    return engine.run_fit(FitJob(demo), NoProgress())
 
 
 @pytest.fixture
-def review(window: MainWindow, demo: LoadedData, fit: FittedModel) -> MainWindow:
+def review(window: MainWindow, demo: LoadedData, fit: FitDone) -> MainWindow:
     """The window with the demo loaded and fitted."""
     window.bridge.review.accept_loaded(demo)
     window.bridge.review.accept_fitted(fit)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import time
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -99,17 +100,24 @@ def test_filter_and_mask() -> None:
     assert texts(model, "item") == ["002", "003"]
 
 
-def test_changed_values_keep_the_order_and_tell_only_their_columns(qtbot: object) -> None:
+def test_changed_values_keep_the_order_and_tell_their_rows(qtbot: object) -> None:
     model = made()
     model.sort(model.column_of("margin"), Qt.SortOrder.DescendingOrder)
-    told: list[int] = []
+    told: list[tuple[int, int]] = []
     resets: list[int] = []
-    model.dataChanged.connect(lambda first, last: told.append(first.column()))
+    model.dataChanged.connect(lambda first, last: told.append((first.row(), last.row())))
     model.modelReset.connect(lambda: resets.append(1))
     model.set_table(small(margin=(9999.0, -3.0, 7.0, 1.0)))
     assert texts(model, "item") == ["004", "001", "002", "003"]
     assert texts(model, "margin") == ["1.0", "9,999.0", "−3.0", "7.0"]
-    assert told == [model.column_of("margin")]
+    assert told == [(0, 0), (1, 1), (2, 2), (3, 3)]  # the scale of the bars has changed
+    table = model.table()
+    plan = [
+        replace(c, values=("in", "in", "as today", "in")) if c.key == "plan" else c for c in table.columns
+    ]
+    told.clear()
+    model.set_table(replace(table, columns=tuple(plan)))
+    assert told == [(model.row_of("002"), model.row_of("002"))]
     assert not resets
 
 

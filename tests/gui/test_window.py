@@ -19,7 +19,6 @@ from PySide6.QtWidgets import QApplication, QFileDialog, QInputDialog, QMessageB
 from pytestqt.qtbot import QtBot
 
 from planner.base.paths import demo_folder
-from planner.demand.fitted import FittedModel
 from planner.gui.app import start
 from planner.gui.app.main_window import MainWindow
 from planner.gui.pages.bench import BenchPage
@@ -241,6 +240,9 @@ def test_cancel_ends_a_job_and_keeps_what_was_there(
     assert not window.bridge.fit("nested")  # one job at a time, and the refusal is shown
     assert len(said(window)) == 1
     said(window)[0].accept()
+    window.activateWindow()
+    with qtbot.waitActive(window):
+        pass
     with qtbot.waitSignal(window.bridge.progress, timeout=60_000):
         pass
     began = time.perf_counter()
@@ -258,8 +260,9 @@ def test_cancel_ends_a_job_and_keeps_what_was_there(
 
 def test_stop_keeps_the_best_plan_so_far(review: MainWindow, qtbot: QtBot, wait_idle: Wait) -> None:
     review.show_page("best_plan")
+    review.best_plan._form._changes.setValue(8)
     review.best_plan._form._seconds.setValue(600)
-    review.bridge.recommend(600.0)
+    review.best_plan._run.click()
     with qtbot.waitSignal(review.bridge.improved, timeout=120_000):
         pass
     review.best_plan._stop.click()
@@ -416,7 +419,7 @@ def test_the_page_of_sales_shows_what_was_read(review: MainWindow, demo: LoadedD
     assert page._models["reconciliation"].rowCount() >= 2
 
 
-def test_help_shows_cautions_and_keys(review: MainWindow, fit: FittedModel) -> None:
+def test_help_shows_cautions_and_keys(review: MainWindow) -> None:
     for key in ("cautions", "notes", "keys", "about"):
         review.actions_.by_key[key].trigger()
     from_menu = [w for w in review.findChildren(QObject) if w.metaObject().className() == "QDialog"]

@@ -279,7 +279,8 @@ class MainWindow(QMainWindow):
 
     def _finished(self, key: str, result: object) -> None:
         said = {
-            "load": _("Loaded."),
+            # Says what of an earlier plan did not fit the new data.
+            "load": self.bridge.last_label,
             "fit": _("The share model is fitted."),
             "recommend": _("The best plan is found."),
         }

@@ -69,6 +69,7 @@ class ReviewBridge(QObject):
         self._runner = runner
         self._running: Running | None = None
         self._proposal: Proposal | None = None
+        self.last_label = ""
         self._timer = QTimer(self)
         self._timer.setInterval(_POLL_MS)
         self._timer.timeout.connect(self._poll)
@@ -90,6 +91,7 @@ class ReviewBridge(QObject):
         return True
 
     def _review_changed(self, change: Change) -> None:
+        self.last_label = change.label
         if change.kinds & {"data", "fit"}:
             self.propose(None)
         self.changed.emit(change.kinds)

@@ -21,6 +21,7 @@ Index = QModelIndex | QPersistentModelIndex
 Role = Qt.ItemDataRole
 _NUMERIC = ("count", "number", "money", "percent")
 _NOWHERE = QModelIndex()
+_FEW = 12
 
 
 @dataclass(frozen=True)
@@ -162,21 +163,34 @@ class TableModel(QAbstractTableModel):
         return self._identities(table) == self._names
 
     def _update_columns(self, table: Table) -> None:
-        changed_keys = {
-            new.key
-            for old, new in zip(self._table.columns, table.columns, strict=True)
-            if new is not old and list(new.values) != list(old.values)
-        }
+        """Take changed values and tell of the rows they stand in; the rows keep their places."""
+        changed: set[int] = set()
+        keys: set[str] = set()
+        for old, new in zip(self._table.columns, table.columns, strict=True):
+            if new is not old:
+                pairs = enumerate(zip(old.values, new.values, strict=True))
+                rows = {row for row, (before, after) in pairs if before != after}
+                changed |= rows
+                keys |= {new.key} if rows else set()
         self._table = table
         self._haystack = None
         for position, shown in enumerate(self._shown):
             look, key = shown.look, shown.column.key
-            if not changed_keys.intersection((key, look.low, look.high, look.check, self._strong)):
-                continue
-            if changed_keys.intersection((key, look.low, look.high)):
+            if keys.intersection((key, look.low, look.high)):
                 self._shown[position] = self._made(table.column(key), table)
-            if self._rows.size:
-                self.dataChanged.emit(self.index(0, position), self.index(self._rows.size - 1, position))
+                # Another scale or another width of the numbers moves every bar of the column.
+                changed |= set(range(table.n_rows)) if look.bar else set()
+        self._tell(changed)
+
+    def _tell(self, sources: set[int]) -> None:
+        """dataChanged for few rows one by one, for many at once: painting a row costs more than a signal."""
+        rows = [row for row, source in enumerate(self._rows) if int(source) in sources]
+        last = len(self._shown) - 1
+        if not rows or last < 0:
+            return
+        rows_told = [(rows[0], rows[-1])] if len(rows) > _FEW else [(row, row) for row in rows]
+        for first, final in rows_told:
+            self.dataChanged.emit(self.index(first, 0), self.index(final, last))
 
     # -- order and mask --------------------------------------------------------------------
 

@@ -9,6 +9,7 @@ colour.  Heat maps use cividis (Nunez, Anderton & Renslow 2018).
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -94,8 +95,15 @@ class Marks:
 
 def marks_of(palette: QPalette, group: QPalette.ColorGroup = QPalette.ColorGroup.Active) -> Marks:
     """The marks' colours on ``palette``."""
-    background = palette.color(group, QPalette.ColorRole.Base)
-    text = palette.color(group, QPalette.ColorRole.Text)
+    role = QPalette.ColorRole
+    named = (role.Base, role.Text, role.Highlight, role.HighlightedText)
+    return _marks(*(palette.color(group, r).rgba() for r in named))
+
+
+# Painters ask for every row; working out the colours would take longer than painting it.
+@lru_cache(maxsize=16)
+def _marks(base: int, written: int, highlight: int, highlighted: int) -> Marks:
+    background, text = QColor.fromRgba(base), QColor.fromRgba(written)
     dark = luminance(background) < 0.2
 
     def mark(light_name: str, dark_name: str) -> QColor:
@@ -116,8 +124,8 @@ def marks_of(palette: QPalette, group: QPalette.ColorGroup = QPalette.ColorGroup
         plain=readable(mixed(text, background, 0.45), background, text, 3.0),
         value=mark("blue", "sky"),
         bound=mark("vermillion", "orange"),
-        selected=palette.color(group, QPalette.ColorRole.Highlight),
-        selected_text=palette.color(group, QPalette.ColorRole.HighlightedText),
+        selected=QColor.fromRgba(highlight),
+        selected_text=QColor.fromRgba(highlighted),
     )
 
 

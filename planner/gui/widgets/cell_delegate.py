@@ -8,14 +8,13 @@ from PySide6.QtCore import (
     QAbstractItemModel,
     QEvent,
     QModelIndex,
-    QObject,
     QPersistentModelIndex,
     QPointF,
     QRect,
     QRectF,
     Qt,
 )
-from PySide6.QtGui import QColor, QFont, QFontMetrics, QKeyEvent, QMouseEvent, QPainter, QPalette, QPen
+from PySide6.QtGui import QColor, QFont, QFontMetrics, QKeyEvent, QMouseEvent, QPainter, QPen
 from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem
 
 from planner.gui.theme.cells import Cell
@@ -36,20 +35,9 @@ class HasCells(Protocol):
 class CellDelegate(QStyledItemDelegate):
     """Paints ``model.cell(row, column)``; a click or the space bar turns a box."""
 
-    def __init__(self, parent: QObject | None = None) -> None:
-        super().__init__(parent)
-        self._marks: tuple[int, Marks] | None = None
-
-    def _marks_of(self, palette: QPalette) -> Marks:
-        # Computing the colours takes longer than painting a cell.
-        key = palette.cacheKey()
-        if self._marks is None or self._marks[0] != key:
-            self._marks = (key, marks_of(palette))
-        return self._marks[1]
-
     def paint(self, painter: QPainter, option: QStyleOptionViewItem, index: Index) -> None:
         cell = cast(HasCells, index.model()).cell(index.row(), index.column())
-        marks = self._marks_of(option.palette)
+        marks = marks_of(option.palette)
         rect: QRect = option.rect
         painter.save()
         selected = bool(option.state & QStyle.StateFlag.State_Selected)
