@@ -5,7 +5,15 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Protocol, cast
 
-from PySide6.QtCore import QAbstractItemModel, QModelIndex, QPersistentModelIndex, QPoint, Qt, Signal
+from PySide6.QtCore import (
+    QAbstractItemModel,
+    QItemSelectionModel,
+    QModelIndex,
+    QPersistentModelIndex,
+    QPoint,
+    Qt,
+    Signal,
+)
 from PySide6.QtGui import QAction, QGuiApplication, QKeyEvent, QKeySequence
 from PySide6.QtWidgets import QAbstractItemView, QFrame, QHeaderView, QMenu, QTableView, QWidget
 
@@ -94,9 +102,11 @@ class TableView(QTableView):
         """Make the row of ``identity`` current, if it is shown."""
         row = self._rows().row_of(identity)
         if row >= 0:
-            column = max(self.currentIndex().column(), 0)
-            self.setCurrentIndex(self.model().index(row, column))
-            self.scrollTo(self.currentIndex())
+            index = self.model().index(row, max(self.currentIndex().column(), 0))
+            # Said in full, because the view itself would heed a Ctrl or Shift that happens to be held.
+            flags = QItemSelectionModel.SelectionFlag
+            self.selectionModel().setCurrentIndex(index, flags.ClearAndSelect | flags.Rows)
+            self.scrollTo(index)
 
     def _remember(self) -> None:
         self._kept = self.current_identity()
