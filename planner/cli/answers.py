@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 from planner.review.review import RangeReview
+from planner.tables.words import beyond_history
 
 if TYPE_CHECKING:
     from planner.plan.plans import NamedPlan
@@ -112,5 +113,6 @@ def plan_answer(review: RangeReview, plan: NamedPlan) -> dict[str, Any]:
         "space": {name: {"today": today, "used": used, "limit": most} for name, today, used, most in space},
         "estimate": tally_answer(review, tally),
         "ladder": [{"changes": r.changes, "value": r.value, "bound": r.bound} for r in plan.rungs],
+        "beyond_history": beyond_history(review.need_loaded(), plan.states),
         "notes": plan.notes,
     }

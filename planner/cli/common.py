@@ -15,6 +15,7 @@ from planner.review.review import RangeReview
 from planner.tables.format import number, percent, sensible_decimals, span, table_text
 from planner.tables.names import ACTIONS, cluster_name
 from planner.tables.plan import action_word, item_list_table
+from planner.tables.words import beyond_history
 
 if TYPE_CHECKING:
     from planner.plan.plans import NamedPlan
@@ -128,6 +129,9 @@ def say_plan(review: RangeReview, plan: NamedPlan) -> None:
                 span=span(figure.low, figure.high, fine, True),
             )
         )
+    beyond = beyond_history(review.need_loaded(), plan.states)
+    if beyond:
+        say(beyond)
     outcome = plan.outcome
     if outcome is not None:
         fine = max(sensible_decimals([outcome.value]), 1)

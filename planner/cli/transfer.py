@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+from dataclasses import replace
 from pathlib import Path
 
 from planner.base.errors import CallError
@@ -14,9 +15,12 @@ from planner.cli.output import finish, say
 from planner.review.effects import ChangeFromToday, change_from_today
 from planner.tables.csv import ENDINGS, write_csv
 from planner.tables.format import percent, percent_span, table_text
+from planner.tables.table import Table
 
 _COLUMNS = ("kind", "item", "description", "before", "after", "change", "low", "high", "share")
-_MOST_ROWS = 25
+# Brands and suppliers stand in the window and the workbook; the terminal shows the main rows.
+_SUMS = ("changed", "own label", "leaves")
+_MOST_RECEIVERS = 15
 
 
 def words() -> str:
@@ -64,11 +68,23 @@ def prices(texts: list[str]) -> dict[str, float]:
     return found
 
 
+def main_rows(table: Table) -> Table:
+    """The changed items, the receivers that gain most, own label, what leaves."""
+    kinds = table.column("kind").values
+    receivers = [row for row in range(table.n_rows) if kinds[row] == "item"][:_MOST_RECEIVERS]
+    rows = [row for row in range(table.n_rows) if kinds[row] in _SUMS or row in receivers]
+    picked = tuple(replace(c, values=tuple(c.values[row] for row in rows)) for c in table.columns)
+    return replace(table, columns=picked)
+
+
 def _say_change(change: ChangeFromToday) -> None:
     if not change.changed.any():
         say(_("Nothing changes: the items already stand as wanted."))
         return
-    say(table_text(change.receivers, _COLUMNS, rows=_MOST_ROWS))
+    say(table_text(main_rows(change.receivers), _COLUMNS))
+    more = sum(kind == "item" for kind in change.receivers.column("kind").values) - _MOST_RECEIVERS
+    if more > 0:
+        say(_("... and {n} more items; --csv writes all of them.").format(n=more))
     if change.leaves is None:
         return
     share, low, high = change.leaves

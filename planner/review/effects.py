@@ -73,7 +73,8 @@ def _price_ratio(review: RangeReview, prices: Mapping[str, float], rows: list[in
                 remedy=_("Give it a price in the offers table."),
             )
         ratio[rows, j] = prices[item] / price[rows, j]
-    return ratio
+    # Today's price given again is no change, whatever its last digit.
+    return np.where(np.abs(ratio - 1.0) < 1e-9, 1.0, ratio)
 
 
 def change_from_today(
