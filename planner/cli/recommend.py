@@ -6,6 +6,7 @@ import argparse
 from dataclasses import replace
 from pathlib import Path
 
+from planner.base.errors import CallError
 from planner.base.target_file import check_target
 from planner.base.text import _
 from planner.cli.answers import plan_answer
@@ -55,6 +56,8 @@ def limits_of(choices: argparse.Namespace, review: RangeReview) -> Limits:
 
 def run(choices: argparse.Namespace) -> int:
     """Do it; today is left untouched."""
+    if not choices.name.strip():
+        raise CallError(_("--name is empty."), remedy=_("Give the plan a name."))
     if choices.csv is not None:
         check_target(choices.csv, ENDINGS)
     progress = TerminalProgress()

@@ -14,14 +14,14 @@ FIRST = date(2025, 9, 1)
 SEGMENTS = ("Plain soup", "Fish soup", "Bean soup")
 # code, segment, brand, own label, price, cost, width; codes with leading zeros on purpose.
 ITEMS = (
-    ("0011", 0, "Osterbeck", "Y", 1.20, 0.70, 9.0),
+    ("0011", 0, "Österbeck", "Y", 1.20, 0.70, 9.0),
     ("0012", 0, "Marlind", "N", 1.90, 1.10, 10.0),
     ("0013", 0, "Marlind", "N", 2.10, 1.30, 8.0),
     ("0014", 0, "Tverrhus", "N", 2.40, 1.40, 9.0),
-    ("0021", 1, "Osterbeck", "Y", 2.20, 1.30, 9.0),
+    ("0021", 1, "Österbeck", "Y", 2.20, 1.30, 9.0),
     ("0022", 1, "Tverrhus", "N", 3.10, 1.90, 11.0),
     ("0023", 1, "Marlind", "N", 2.80, 1.80, 9.0),
-    ("0031", 2, "Osterbeck", "Y", 1.50, 0.80, 9.0),
+    ("0031", 2, "Österbeck", "Y", 1.50, 0.80, 9.0),
     ("0032", 2, "Quellin", "N", 2.30, 1.30, 10.0),
     ("0033", 2, "Quellin", "N", 2.60, 1.70, 12.0),
 )

@@ -90,7 +90,7 @@ def test_delistings_come_with_the_fit_or_are_computed(
 
 
 def test_a_toggle_and_its_tally_are_fast(review: RangeReview) -> None:
-    """The goal is 10 ms at the demo's size; this fails at five times the goal."""
+    """The goal is 10 ms; this fails at five times the goal.  The demo's size: tests/transfer."""
     review.tally()
     times = []
     for item in ("0011", "0012", "0013", "0021", "0022", "0031", "0032") * 3:
