@@ -54,7 +54,8 @@ def show_keys(parent: QWidget, actions: Mapping[str, QAction]) -> QDialog:
     content = QWidget()
     grid = QGridLayout(content)
     pairs = [
-        (action.text().replace("&", "").replace("…", ""), action.shortcut())
+        # Without what undo or take would do just now.
+        (action.text().replace("&", "").replace("…", "").split(":")[0], action.shortcut())
         for action in actions.values()
         if not action.shortcut().isEmpty()
     ]

@@ -63,11 +63,11 @@ class MainWindow(QMainWindow):
         self.setAcceptDrops(True)
         self.setMinimumSize(QSize(900, 620))
         self.evidence, self.best_plan = EvidencePage(bridge), BestPlanPage(bridge)
-        self.saved_plans = SavedPlansPage(bridge)
+        self.bench, self.saved_plans = BenchPage(bridge), SavedPlansPage(bridge)
         self.pages: dict[str, Page] = {
             "sales": SalesPage(bridge),
             "evidence": self.evidence,
-            "bench": BenchPage(bridge),
+            "bench": self.bench,
             "best_plan": self.best_plan,
             "saved_plans": self.saved_plans,
         }
@@ -280,7 +280,7 @@ class MainWindow(QMainWindow):
     def _finished(self, key: str, result: object) -> None:
         said = {
             # Says what of an earlier plan did not fit the new data.
-            "load": self.bridge.last_label,
+            "load": _("Done: {what}.").format(what=self.bridge.last_label),
             "fit": _("The share model is fitted."),
             "recommend": _("The best plan is found."),
         }

@@ -110,7 +110,8 @@ class ReviewBridge(QObject):
         """Take the proposal into the plan (undoable)."""
         proposal = self._proposal
         if proposal is not None:
-            self.do(lambda: self.review.take_states(proposal.states, proposal.label))
+            label = _("Take {what}").format(what=proposal.label)
+            self.do(lambda: self.review.take_states(proposal.states, label))
 
     def keep(self, name: str) -> None:
         """Keep the present plan under a name (undoable)."""
@@ -181,12 +182,13 @@ class ReviewBridge(QObject):
     def load_files(
         self,
         files: dict[str, Path | None],
+        matches: tuple[tuple[str, str, str], ...] = (),
         category: str = "",
         segment_by: tuple[str, ...] = (),
         baseline_weeks: int = 13,
     ) -> bool:
-        """Load chosen files, by table."""
-        request = load_request(files, category=category, segment_by=segment_by)
+        """Load chosen files, by table; matches: (table, our column, its name in the file)."""
+        request = load_request(files, matches, category, segment_by)
         running = Running("load", _("Loading"), self.review.accept_loaded)
         return self._start(running, "run_load", LoadJob(replace(request, baseline_weeks=baseline_weeks)))
 

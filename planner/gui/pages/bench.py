@@ -101,7 +101,7 @@ class BenchPage(Page):
         self._only.setText(_("&Only changes"))
         self._only.setCheckable(True)
         self._only.setAccessibleName(_("Show only items that differ from today"))
-        self._only.toggled.connect(lambda _on: self._mask())
+        self._only.toggled.connect(self._only_toggled)
         row.addWidget(self._filter, 1)
         row.addWidget(label)
         row.addWidget(self._cluster)
@@ -167,6 +167,10 @@ class BenchPage(Page):
         """Turn an item's box, in the chosen cluster or in all."""
         self.bridge.do(lambda: self.bridge.review.toggle(item, self._chosen_cluster()))
 
+    def show_all_changes(self) -> None:
+        """Where the sales of the whole plan go, instead of one item's."""
+        self._scope.setCurrentIndex(self._scope.findData("plan"))
+
     def _lock(self, kind: str) -> None:
         rows = {index.row() for index in self._view.selectionModel().selectedIndexes()}
         items = [code for code in (self._model.identity_of(row) for row in sorted(rows)) if code]
@@ -181,6 +185,11 @@ class BenchPage(Page):
         if item:
             self._item = item
             self._later.start()
+
+    def _only_toggled(self, on: bool) -> None:
+        # A pressed button alone is hardly seen on dark palettes.
+        self._only.setText(_("✓ &Only changes") if on else _("&Only changes"))
+        self._mask()
 
     def _mask(self) -> None:
         table = self._model.table()

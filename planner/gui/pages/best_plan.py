@@ -25,7 +25,7 @@ from planner.gui.pages.page import Page
 from planner.gui.widgets.gap_picture import GapPicture
 from planner.gui.widgets.table_view import TableView
 from planner.gui.widgets.words import Words
-from planner.plan.plans import NamedPlan, States
+from planner.plan.plans import NamedPlan, PlanRung, States
 from planner.tables.limits import limits_table
 from planner.tables.plan import item_list_table
 
@@ -113,6 +113,10 @@ class BestPlanPage(Page):
         self._tabs.addTab(TableView(self._limits, _("Limits and what the answer uses")), _("Limits &used"))
         return self._tabs
 
+    def limit_changes(self, count: int | None) -> None:
+        """At most so many changes (undoable); None: no limit."""
+        self._form.set_changes(count)
+
     # -- doing -----------------------------------------------------------------------------
 
     def run(self) -> None:
@@ -174,13 +178,13 @@ class BestPlanPage(Page):
             self._ladder.set_table(self.bridge.review.table("ladder", name=plan.name))
         self._show(plan, plan.states, plan.name)
 
-    def _show(self, plan: NamedPlan, states: States, label: str) -> None:
+    def _show(self, plan: NamedPlan, states: States, label: str, rung: PlanRung | None = None) -> None:
         """Words and tables of the plan or one of its rungs; both may be taken."""
         review = self.bridge.review
         loaded = review.loaded
         assert loaded is not None
         tally = review.single_tally(states)
-        self._words.set_sentences(answer_words(plan, tally, review.words("cautions")[0]))
+        self._words.set_sentences(answer_words(plan, tally, review.words("cautions")[0], rung))
         items = item_list_table(loaded, tally.effects, states, plan.reasons)
         self._changes.set_table(only_changes(items))
         self._limits.set_table(limits_table(loaded, plan.limits, states))
@@ -193,7 +197,7 @@ class BestPlanPage(Page):
         for rung in plan.rungs:
             if str(rung.changes) == changes:
                 label = _("{plan}, at most {n} changes").format(plan=plan.name, n=rung.changes)
-                self._show(plan, rung.states, label)
+                self._show(plan, rung.states, label, rung)
 
     def kept_state(self) -> QByteArray:
         return self._split.saveState()

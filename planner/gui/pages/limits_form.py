@@ -128,7 +128,11 @@ class LimitsForm(QWidget):
             self._bridge.do(lambda: self._bridge.review.set_limits(limits))
 
     def _changes_typed(self, count: int) -> None:
-        self._set(max_changes=None if count == _FREE else count)
+        self.set_changes(None if count == _FREE else count)
+
+    def set_changes(self, count: int | None) -> None:
+        """At most so many changes; None: no limit."""
+        self._set(max_changes=count)
 
     def _typed(self, cluster: str, key: str, text: str) -> None:
         review = self._bridge.review

@@ -18,9 +18,11 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
+from planner.base.errors import RangewrightError
 from planner.base.paths import demo_folder
 from planner.base.text import _
 from planner.gui.bridge.review_bridge import ReviewBridge
+from planner.gui.models.column_matches import read_matches, write_matches
 from planner.gui.models.coverage import coverage
 from planner.gui.models.table_model import Look, TableModel
 from planner.gui.pages.page import Page
@@ -69,8 +71,8 @@ class SalesPage(Page):
         self._table_tabs: list[QWidget] = []
         for key, title, looks in (
             ("reconciliation", _("Reconciliation"), {}),
-            ("checks", _("Checks"), {"share": Look(bar=False)}),
-            ("matches", _("Column matches"), {}),
+            ("checks", _("Checks"), {}),
+            ("matches", _("Column matches"), {"their_name": Look(editable=True)}),
             ("events", _("Listing events"), {"money": Look(bar=True)}),
         ):
             self._table_tabs.append(self._table_tab(key, title, looks))
@@ -82,6 +84,7 @@ class SalesPage(Page):
         scroll.setWidget(self._coverage)
         self._table_tabs.append(scroll)
         self._tabs.addTab(scroll, _("Coverage"))
+        self._models["matches"].typed.connect(self._match_typed)
         bridge.job_changed.connect(self._enable)
         bridge.files_dropped.connect(self.take_files)
         self._enable()
@@ -139,6 +142,11 @@ class SalesPage(Page):
         self._category.setPlaceholderText(_("only when the files hold several"))
         self._segment_by = QLineEdit()
         self._segment_by.setPlaceholderText(_("columns of the items file, separated by commas"))
+        self._matches = QLineEdit()
+        self._matches.setPlaceholderText(_("such as sales.units=qty, items.cost=landed"))
+        self._matches.setToolTip(
+            _("Only where the program took the wrong column: table.column=name in the file, with commas.")
+        )
         self._weeks = QSpinBox()
         self._weeks.setRange(1, 104)
         self._weeks.setValue(13)
@@ -150,6 +158,7 @@ class SalesPage(Page):
             (
                 (_("Categor&y"), _("Category"), self._category),
                 (_("Segments &by"), _("Columns that form the segments"), self._segment_by),
+                (_("Colu&mn matches"), _("Column matches"), self._matches),
                 (_("Today is the &last"), _("Weeks that today is measured on"), self._weeks),
             )
         ):
@@ -193,12 +202,30 @@ class SalesPage(Page):
         """Load the chosen files in the child process."""
         files = {row.key: self._files.path(row.key) for row in file_rows()}
         columns = tuple(part.strip() for part in self._segment_by.text().split(",") if part.strip())
+        try:
+            matches = read_matches(self._matches.text())
+        except RangewrightError as error:
+            self.bridge.failed.emit(error)
+            return
         self.bridge.load_files(
             files,
+            matches=matches,
             category=self._category.text().strip(),
             segment_by=columns,
             baseline_weeks=self._weeks.value(),
         )
+
+    def _match_typed(self, row: str, _key: str, name: str) -> None:
+        """Another column of the file was named for one of ours: load again with it."""
+        table = self._models["matches"].table()
+        mine = (table.column("table").values[int(row)], table.column("column").values[int(row)])
+        try:
+            rest = [match for match in read_matches(self._matches.text()) if match[:2] != mine]
+        except RangewrightError as error:
+            self.bridge.failed.emit(error)
+            return
+        self._matches.setText(write_matches([*rest, (str(mine[0]), str(mine[1]), name)]))
+        self.load()
 
     def _enable(self) -> None:
         idle = self.bridge.idle
@@ -247,6 +274,7 @@ class SalesPage(Page):
             self._files.set_path(row.key, getattr(request, row.key))
         self._category.setText(request.category)
         self._segment_by.setText(", ".join(request.segment_by))
+        self._matches.setText(write_matches(request.matches))
         self._weeks.setValue(request.baseline_weeks)
         for key, model in self._models.items():
             table = self.bridge.review.table(key)

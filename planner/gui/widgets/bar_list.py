@@ -145,7 +145,7 @@ class _BarPainter(QStyledItemDelegate):
         row, scale = model.rows[number_of_row], model.scales[number_of_row]
         widest = painter.fontMetrics().horizontalAdvance(model.longest) + 8
         number = QRect(rect.right() - widest - _PAD, rect.top(), widest, rect.height())
-        label = QRect(rect.left() + _PAD, rect.top(), int((rect.width() - widest) * 0.56), rect.height())
+        label = QRect(rect.left() + _PAD, rect.top(), int((rect.width() - widest) * 0.6), rect.height())
         bars = QRect(label.right() + _PAD, rect.top() + 4, number.left() - label.right() - 2 * _PAD, 1)
         bars.setHeight(rect.height() - 8)
         self._text(painter, label, row.label, colour)

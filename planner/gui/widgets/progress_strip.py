@@ -59,7 +59,9 @@ class ProgressStrip(QWidget):
     def report(self, step: str, fraction: float | None) -> None:
         """The job's step and how far it is (0..1)."""
         self._fraction = fraction
-        self._label.setText(_("{job}: {step}").format(job=self._job, step=step) if step else self._job)
+        self._label.setText(
+            _("{job}: {step}").format(job=self._job, step=step) if step not in ("", self._job) else self._job
+        )
         if fraction is None:
             self._bar.setRange(0, 0)
         else:

@@ -113,7 +113,7 @@ class TableView(QTableView):
 
     def _restore(self) -> None:
         self._span()
-        self._set_widths()
+        self._set_widths(grow=True)
         self._fit_height()
         if self._kept:
             self.choose(self._kept)
@@ -127,16 +127,21 @@ class TableView(QTableView):
         for row in self._spanned:
             self.setSpan(row, 0, 1, columns)
 
-    def _set_widths(self) -> None:
-        """Widths from titles and texts, for columns that are new or have just got contents."""
+    def _set_widths(self, grow: bool = False) -> None:
+        """Widths from titles and texts, for columns that are new or have just got contents.
+
+        grow: also for those whose texts have become longer.
+        """
         model = self.model()
         measure = self.fontMetrics().horizontalAdvance
         titles = self._rows().titles_with_contents()
         if not model.rowCount():
             return
         for column, title in enumerate(titles):
-            if title not in self._widths_for:
-                self.setColumnWidth(column, self._rows().column_width(column, measure))
+            new = title not in self._widths_for
+            if new or grow:
+                width = self._rows().column_width(column, measure)
+                self.setColumnWidth(column, width if new else max(width, self.columnWidth(column)))
         self._widths_for = titles
 
     def fit_rows(self, most: int) -> None:
