@@ -7,6 +7,8 @@ from collections.abc import Callable, Iterator
 from pathlib import Path
 
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
+# As the program itself does before it opens the window.
+os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
 
 import pytest
 from PySide6.QtCore import QLocale, QSettings

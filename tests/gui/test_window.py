@@ -432,6 +432,17 @@ def test_help_shows_cautions_and_keys(review: MainWindow) -> None:
         dialog.reject()  # type: ignore[attr-defined]
 
 
+def test_the_heavy_parts_wait_for_the_first_paint(window: MainWindow, qtbot: QtBot) -> None:
+    first = start.FirstPaint(window)
+    with qtbot.waitSignal(first.done, timeout=5000):
+        window.update()
+    told: list[int] = []
+    first.done.connect(lambda: told.append(1))
+    window.repaint()
+    qtbot.wait(20)
+    assert not told
+
+
 def test_starting_brings_in_nothing_heavy() -> None:
     words = (
         "import sys, planner.gui.app.start; "

@@ -8,8 +8,8 @@ import threading
 from pathlib import Path
 from types import TracebackType
 
-from PySide6.QtCore import QLocale, QTimer
-from PySide6.QtWidgets import QApplication
+from PySide6.QtCore import QEvent, QLocale, QObject, QTimer, Signal
+from PySide6.QtWidgets import QApplication, QWidget
 
 from planner import __version__
 from planner.base.runner import ChildRunner
@@ -21,6 +21,22 @@ from planner.gui.bridge.review_bridge import ReviewBridge
 from planner.gui.theme.icons import program_icon
 from planner.review import engine
 from planner.review.review import RangeReview
+
+
+class FirstPaint(QObject):
+    """``done`` is sent once, after the window has painted itself for the first time."""
+
+    done = Signal()
+
+    def __init__(self, window: QWidget) -> None:
+        super().__init__(window)
+        window.installEventFilter(self)
+
+    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
+        if event.type() == QEvent.Type.Paint:
+            watched.removeEventFilter(self)
+            QTimer.singleShot(0, self.done.emit)
+        return False
 
 
 def make_application(argv: list[str]) -> QApplication:
@@ -77,9 +93,9 @@ def run(argv: list[str]) -> int:
         show_error(window, error)
 
     sys.excepthook = unexpected
+    first = FirstPaint(window)
+    first.done.connect(lambda: _after_paint(window, argv))
     window.show()
-    # Both after the window has painted itself once.
-    QTimer.singleShot(0, lambda: QTimer.singleShot(0, lambda: _after_paint(window, argv)))
     try:
         return app.exec()
     finally:

@@ -116,8 +116,17 @@ class ReviewBridge(QObject):
     def keep(self, name: str) -> None:
         """Keep the present plan under a name (undoable)."""
         states = self.review.states
-        if states is not None:
-            self.do(lambda: self.review.keep_plan(name, states))
+        if states is None:
+            return
+        if name == self.present_plan().name:
+            self.failed.emit(
+                CallError(
+                    _("“{name}” is what the plan in work is called.").format(name=name),
+                    remedy=_("Choose another name."),
+                )
+            )
+            return
+        self.do(lambda: self.review.keep_plan(name, states))
 
     def set_lock(self, lock: ItemLock) -> None:
         """Lock an item, in place of another lock of the same item and cluster (undoable)."""

@@ -216,6 +216,7 @@ class BenchPage(Page):
             self._mask()
         if not self._view.current_identity() and self._model.rowCount() > 1:
             self._view.choose(self._model.identity_of(1))
+        self._later.stop()
         self._show_receivers()
 
     def _fill_clusters(self, clusters: tuple[str, ...]) -> None:

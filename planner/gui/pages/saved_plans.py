@@ -192,7 +192,10 @@ class SavedPlansPage(Page):
     def _tally(self, plan: NamedPlan) -> Any:
         key = plan.states.tobytes()
         if key not in self._tallies:
-            self._tallies[key] = self.bridge.review.single_tally(plan.states)
+            # The review keeps its own plan's tally and does not work it out again.
+            review = self.bridge.review
+            present = review.states is not None and key == review.states.tobytes()
+            self._tallies[key] = review.tally() if present else review.single_tally(plan.states)
         return self._tallies[key]
 
     def look(self, kinds: frozenset[str]) -> None:
