@@ -10,6 +10,7 @@ from PySide6.QtGui import QColor, QImage, QPainter, QPalette, QPen
 
 from planner.gui.theme.colours import OKABE_ITO, contrast, heat_colours, luminance, marks_of, readable
 from planner.gui.theme.icons import icon
+from planner.gui.theme.palettes import light_palette
 
 pytestmark = pytest.mark.window
 
@@ -28,7 +29,14 @@ def test_marks_are_readable_on_their_palette(palette: QPalette) -> None:
     for name in ("text", "faint"):
         assert contrast(getattr(marks, name), marks.background) >= 4.5, name
         assert contrast(getattr(marks, name), marks.band) >= 4.5, name
-    assert contrast(marks.selected_text, marks.selected) >= 4.0
+    assert contrast(marks.selected_text, marks.selected) >= 4.5
+
+
+def test_a_selection_too_near_to_its_text_moves_away() -> None:
+    palette = light_palette()
+    palette.setColor(QPalette.ColorRole.Highlight, QColor("#308cc6"))
+    marks = marks_of(palette)
+    assert contrast(QColor("#308cc6"), QColor("white")) < 4.5 <= contrast(marks.selected_text, marks.selected)
 
 
 def test_texts_of_the_palettes_are_readable(palette: QPalette) -> None:

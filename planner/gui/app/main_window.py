@@ -61,7 +61,6 @@ class MainWindow(QMainWindow):
         self.setObjectName("main")
         self.setWindowIcon(program_icon())
         self.setAcceptDrops(True)
-        self.setMinimumSize(QSize(900, 620))
         self.evidence, self.best_plan = EvidencePage(bridge), BestPlanPage(bridge)
         self.bench, self.saved_plans = BenchPage(bridge), SavedPlansPage(bridge)
         self.pages: dict[str, Page] = {
@@ -76,7 +75,9 @@ class MainWindow(QMainWindow):
         self._view_menu()
         self._connect()
         self._paint_icons()
-        self.resize(1366, 820)
+        room = self.screen().availableGeometry()
+        # Room for the frame, which is not known before the window is shown.
+        self.resize(min(1366, room.width() - 16), min(820, room.height() - 48))
         self._restore()
         self._refresh(frozenset({"data", "fit", "states", "history", "file"}))
         self._job_changed()

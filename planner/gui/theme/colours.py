@@ -105,6 +105,9 @@ def marks_of(palette: QPalette, group: QPalette.ColorGroup = QPalette.ColorGroup
 def _marks(base: int, written: int, highlight: int, highlighted: int) -> Marks:
     background, text = QColor.fromRgba(base), QColor.fromRgba(written)
     dark = luminance(background) < 0.2
+    selected, selected_text = QColor.fromRgba(highlight), QColor.fromRgba(highlighted)
+    # Some systems' selection is too near to its text; away from the text it goes.
+    away = QColor("black" if luminance(selected_text) > 0.4 else "white")
 
     def mark(light_name: str, dark_name: str) -> QColor:
         name = dark_name if dark else light_name
@@ -124,8 +127,8 @@ def _marks(base: int, written: int, highlight: int, highlighted: int) -> Marks:
         plain=readable(mixed(text, background, 0.45), background, text, 3.0),
         value=mark("blue", "sky"),
         bound=mark("vermillion", "orange"),
-        selected=QColor.fromRgba(highlight),
-        selected_text=QColor.fromRgba(highlighted),
+        selected=readable(selected, selected_text, away, 4.5),
+        selected_text=selected_text,
     )
 
 
