@@ -158,6 +158,20 @@ def test_table_view_sorts_copies_and_keeps_its_row(qtbot: QtBot, palette: QPalet
     assert text >= 4.5
 
 
+def test_columns_grow_with_their_texts(qtbot: QtBot) -> None:
+    model = TableModel(LOOKS, identity="item")
+    view = TableView(model, "Bench")
+    model.set_table(small())
+    shown(qtbot, view, 900, 240)
+    column = model.column_of("description")
+    before = view.columnWidth(column)
+    model.set_table(small(name="a description that is a good deal longer"))
+    assert view.columnWidth(column) > before
+    assert view.columnWidth(column) >= view.fontMetrics().horizontalAdvance(
+        "a description that is a good deal longer"
+    )
+
+
 def test_space_and_click_turn_a_box(qtbot: QtBot) -> None:
     model = TableModel(LOOKS, identity="item")
     view = TableView(model, "Bench")

@@ -21,6 +21,7 @@ from planner.base.text import _
 from planner.gui.widgets.cell_delegate import CellDelegate
 
 Index = QModelIndex | QPersistentModelIndex
+_SHORT = 40
 
 
 class HasRows(Protocol):
@@ -61,7 +62,8 @@ class TableView(QTableView):
         model.modelAboutToBeReset.connect(self._remember)
         model.modelReset.connect(self._restore)
         model.layoutChanged.connect(self._span)
-        model.dataChanged.connect(lambda _first, _last: self._set_widths())
+        # A short table may also grow wider with every change; measuring a long one would be felt.
+        model.dataChanged.connect(lambda _first, _last: self._set_widths(model.rowCount() <= _SHORT))
         self._restore()
 
     def _set_up(self) -> None:
