@@ -34,17 +34,6 @@ class ChangeFromToday:
     leaves: tuple[float, float, float] | None
 
 
-def _positions(review: RangeReview, items: Sequence[str]) -> dict[str, int]:
-    index = review.need_loaded().catalogue.item_index()
-    unknown = [item for item in items if item not in index]
-    if unknown:
-        raise CallError(
-            _("Unknown item '{item}'.").format(item=unknown[0]),
-            remedy=_("Use a code of the items table, with its leading zeros."),
-        )
-    return {item: index[item] for item in items}
-
-
 def _states(
     review: RangeReview, delist: Sequence[str], listed: Sequence[str], rows: list[int]
 ) -> NDArray[np.int8]:
@@ -55,9 +44,9 @@ def _states(
             _("{item} is both delisted and listed.").format(item=both[0]), remedy=_("Name it once.")
         )
     states = review.today_states()
-    for j in _positions(review, delist).values():
+    for j in map(review.position, delist):
         states[rows, j] = OUT
-    for j in _positions(review, listed).values():
+    for j in map(review.position, listed):
         states[review.open_to(j, rows), j] = IN
     return states
 
@@ -66,7 +55,8 @@ def _price_ratio(review: RangeReview, prices: Mapping[str, float], rows: list[in
     """New over today's regular price (C, J), 1 where nothing changes."""
     price = review.need_loaded().base.price
     ratio = np.ones(price.shape)
-    for item, j in _positions(review, list(prices)).items():
+    for item in prices:
+        j = review.position(item)
         if not (price[rows, j] > 0.0).all():
             raise CallError(
                 _("{item} has no price today, so a new one cannot be compared.").format(item=item),

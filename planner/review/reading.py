@@ -22,7 +22,7 @@ from planner.tables.sales import checks_table, events_table, matches_table, reco
 from planner.tables.table import Table
 from planner.tables.tally import tally_table
 from planner.tables.words import cautions, evidence_words, notes
-from planner.transfer.what_if import OUT
+from planner.transfer.what_if import IN, OUT
 
 if TYPE_CHECKING:
     from planner.review.review import RangeReview
@@ -36,16 +36,13 @@ def _receivers(
     if item is None:
         changed = review.today_states() != states
         return receivers_table(loaded, review.effects(), measure, changed, cluster)
-    j = loaded.catalogue.item_index()[item]
+    j = review.position(item)
     without = review.today_states()
     if (without[:, j] != OUT).any():
         without[:, j] = OUT
     else:
         # An item not sold today: whose sales it would take.
-        offer = loaded.catalogue.items[j]
-        for c, name in enumerate(loaded.catalogue.clusters):
-            if not offer.offered_to or name in offer.offered_to:
-                without[c, j] = 1
+        without[review.open_to(j, list(range(len(without)))), j] = IN
     changed = review.today_states() != without
     return receivers_table(loaded, review.single_effects(without), measure, changed, cluster)
 

@@ -161,11 +161,13 @@ class RangeReview:
         self._history.do(label, replace(self._history.present, **parts))
         return self._tell(Change(frozenset(kinds | {"history"}), label, items))
 
-    def _position(self, item: str) -> int:
+    def position(self, item: str) -> int:
+        """Place of an item on the item axis; CallError for an unknown code."""
         index = self.need_loaded().catalogue.item_index()
         if item not in index:
             raise CallError(
-                _("Unknown item '{item}'.").format(item=item), remedy=_("Use a code of the items table.")
+                _("Unknown item '{item}'.").format(item=item),
+                remedy=_("Use a code of the items table, with its leading zeros."),
             )
         return index[item]
 
@@ -194,7 +196,7 @@ class RangeReview:
 
     def set_state(self, item: str, cluster: str, state: int) -> Change:
         """Put an item IN, OUT or AS_TODAY in one cluster ("": in every one that it is open to)."""
-        j, rows = self._position(item), self._clusters(cluster)
+        j, rows = self.position(item), self._clusters(cluster)
         today = self.today_states()
         if state == IN:
             rows = self.open_to(j, rows)
@@ -206,7 +208,7 @@ class RangeReview:
 
     def toggle(self, item: str, cluster: str = "") -> Change:
         """Tick or untick: off every list when it is on one of them, else back to today (or listed)."""
-        j, rows = self._position(item), self._clusters(cluster)
+        j, rows = self.position(item), self._clusters(cluster)
         if (self._need_states()[rows, j] != OUT).any():
             return self.set_state(item, cluster, OUT)
         listed = (self.today_states()[rows, j] != OUT).any()
@@ -214,7 +216,7 @@ class RangeReview:
 
     def set_lock(self, item: str, kind: str | None, cluster: str = "", reason: str = "") -> Change:
         """Lock an item ("keep", "never", "as today"), or take its locks off (None)."""
-        self._position(item)
+        self.position(item)
         self._clusters(cluster)
         rest = tuple(lock for lock in self.limits.locks if (lock.item, lock.cluster) != (item, cluster))
         if kind is None:
@@ -304,7 +306,7 @@ class RangeReview:
 
     def set_reason(self, item: str, cluster: str, words: str) -> Change:
         """Write the reason beside a decision; empty words take it away."""
-        self._position(item)
+        self.position(item)
         rest = tuple(kept for kept in self.reasons if kept[:2] != (item, cluster))
         reasons = (*rest, (item, cluster, words)) if words.strip() else rest
         return self._do(_("Reason for {item}").format(item=item), {"states"}, (item,), reasons=reasons)

@@ -38,6 +38,8 @@ def test_choices_reach_their_table(review: RangeReview) -> None:
     assert review.table("events", top=2).n_rows == 2
     with pytest.raises(CallError, match="West"):
         review.table("bench", cluster="West")
+    with pytest.raises(CallError, match="'12'"):
+        review.table("receivers", item="12")
 
 
 def test_receivers_of_one_item_do_not_touch_the_plan(review: RangeReview, fit: FitDone) -> None:
