@@ -22,9 +22,10 @@ Ints = NDArray[np.int64]
 # So many whole plans are simply valued.
 _FEW_PLANS = 60_000
 _REDUCE_ROUNDS = 6
-_ROOT_ROUNDS = 15
+_ROOT_ROUNDS = 30
 # Ranges are sought at the root, and wherever pricing all combinations is cheap.
 _SHORT_LISTS = 20_000
+_LONG_LISTS = 100_000
 _RANGE_TOLERANCE = 1e-2
 
 
@@ -63,6 +64,7 @@ class ClusterSearch:
         self._counter = itertools.count()
         self._closed = -np.inf
         self._in_work = -np.inf
+        self._turn = 0
         self._blocks = blocks
         # Until the root is bounded: a bound that needs no list of combinations.
         self._unopened: float | None = min(known_bound, coarse_bound(model))
@@ -167,7 +169,7 @@ class ClusterSearch:
             else:
                 narrow = width
             gained = old - node.bound > 0.1 * (node.bound - self.target)
-            if after > 0.8 * before and narrow > 0.97 * width and not gained:
+            if after > 0.8 * before and narrow > 0.99 * width and not gained:
                 break
         return node
 
@@ -235,7 +237,10 @@ class ClusterSearch:
         n = self.model.n_components
         edges = {"low": box.low.copy(), "high": box.high.copy()}
         edges |= {"t_low": box.t_low.copy(), "t_high": box.t_high.copy()}
-        for r in range(n):
+        # Long lists are priced slowly: a third of the components at a time, others in later rounds.
+        long = sum(block.size for block in node.blocks) > _LONG_LISTS
+        self._turn += 1
+        for r in range(self._turn % 3 if long else 0, n, 3 if long else 1):
             if self.stopped():
                 break
             for names, by_phi in ((("low", "high"), 0.0), (("t_low",), 1.0)):
