@@ -30,7 +30,7 @@ def missing_libraries() -> list[str]:
     missing = []
     for line in LIBRARIES.read_text(encoding="utf-8").splitlines():
         text = line.split("#")[0].split()
-        if len(text) != 2:
+        if not text:
             continue
         package, library = text
         try:
