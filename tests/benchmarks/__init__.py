@@ -1,0 +1,1 @@
+"""Measurements that print one table each; run by hand, not by the test command."""
