@@ -61,7 +61,8 @@ def step(title: str, command: list[str], environment: dict[str, str]) -> bool:
     print(f"== {title}", flush=True)
     began = time.monotonic()
     done = subprocess.run(command, cwd=ROOT, env=environment)
-    print(f"== {title}: {'passed' if done.returncode == 0 else 'FAILED'}", end=" ")
+    verdict = "passed" if done.returncode == 0 else f"FAILED (exit code {done.returncode})"
+    print(f"== {title}: {verdict}", end=" ")
     print(f"in {time.monotonic() - began:.0f} s", flush=True)
     return done.returncode == 0
 

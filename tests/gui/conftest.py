@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import sys
 from collections.abc import Callable, Iterator
 from pathlib import Path
 
@@ -24,6 +25,24 @@ from planner.gui.theme.palettes import dark_palette, light_palette
 from planner.review import engine
 from planner.review.jobs import FitDone, FitJob
 from planner.sales.report import LoadedData
+
+_VERDICT = pytest.StashKey[int]()
+
+
+def pytest_sessionfinish(session: pytest.Session, exitstatus: int) -> None:
+    """Remember the verdict for the end."""
+    session.config.stash[_VERDICT] = int(exitstatus)
+
+
+def pytest_unconfigure(config: pytest.Config) -> None:
+    """End with the tests' own verdict, all being printed, without Qt's teardown after Python's.
+
+    Once in a while (PySide6 6.11 on Python 3.11) that teardown crashes the finished process.
+    """
+    if QApplication.instance() is not None and _VERDICT in config.stash:
+        sys.stdout.flush()
+        sys.stderr.flush()
+        os._exit(config.stash[_VERDICT])
 
 
 @pytest.fixture(autouse=True)
